@@ -1,0 +1,161 @@
+"""What a case says, as plain objects in SI units.
+
+    Case
+    ├── Site                       what surrounds the plant
+    ├── boundaries                 ids only: what is not listed does not cross
+    ├── Stream      ──┐
+    ├── Transfer    ──┼── each holds its Quantities by property name
+    ├── Relation    ──┘
+    ├── Limit                      a bound on a quantity, with its reason
+    └── AnswerOptions              how the answer is to be told
+
+One quantity has one address, `item.property`. Direction is said by `source` and `target` (the request's `from` and
+`to`); None stands for the surroundings.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass, field
+from typing import Literal
+
+STATE_PROPERTIES = (
+    "p", "T", "h", "s", "u", "rho", "v", "x", "superheat", "subcooling",
+    "relative_humidity", "humidity_ratio", "wet_bulb", "dew_point",
+)  # fmt: skip
+"""Properties that belong to a stream's state; every other property of a stream belongs to the stream itself."""
+
+STANDARD_ATMOSPHERE = 101_325.0  # [Pa] ISO 2533:1975
+STANDARD_GRAVITY = 9.80665  # [m/s2] CGPM 1901, Resolution 2
+
+
+@dataclass(frozen=True, slots=True)
+class Quantity:
+    """One quantity of a case: given, asked for, or both bounded and asked for.
+
+    value [SI] is None unless given; `wanted` marks a "?"; u [SI] is the standard uncertainty of a given value;
+    between [SI] bounds and near [SI] steers the search for an unknown; unit is the unit for the answer
+    (a symbol of the unit table, None: the presentation's own).
+    """
+
+    address: str
+    kind: str
+    value: float | None = None
+    wanted: bool = False
+    unit: str | None = None
+    u: float | None = None
+    between: tuple[float, float] | None = None
+    near: float | None = None
+    pointer: str = ""
+
+
+Quantities = Mapping[str, Quantity]
+
+
+@dataclass(frozen=True, slots=True)
+class Fluid:
+    """A fluid as named by a case: what the catalogue needs to build its property model (all numbers SI)."""
+
+    key: str
+    kind: str
+    name: str | None = None
+    model: str | None = None
+    mole_fractions: Mapping[str, float] | None = None
+    mass_fraction: float | None = None
+    molar_mass: float | None = None
+    cp: float | None = None
+    density: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Boundary:
+    id: str
+    pointer: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Stream:
+    """A flow of matter from one boundary to another; side labels tell circuits of one fluid apart."""
+
+    id: str
+    source: str | None
+    target: str | None
+    fluid: str | None
+    quantities: Quantities
+    side_source: str | None = None
+    side_target: str | None = None
+    pointer: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Transfer:
+    """Heat, work or fuel across a boundary, counted positive from `source` to `target`."""
+
+    id: str
+    kind: Literal["heat", "shaft_work", "electrical_work", "expansion_work", "fuel"]
+    source: str | None
+    target: str | None
+    quantities: Quantities
+    has_law: bool = False
+    law_stream: str | None = None
+    basis: Literal["net", "gross"] | None = None
+    pointer: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Relation:
+    """One extra equation. `addresses` are quantities it ties; `streams` are the streams it speaks of, by role."""
+
+    id: str
+    kind: str
+    quantities: Quantities
+    addresses: tuple[str, ...] = ()
+    streams: Mapping[str, str] = field(default_factory=dict)
+    arrangement: str | None = None
+    pointer: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Limit:
+    of: str
+    minimum: Quantity | None
+    maximum: Quantity | None
+    why: str = ""
+    pointer: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Site:
+    """Surroundings; *_given tells whether the case said it (otherwise it becomes an assumption)."""
+
+    atmospheric_pressure: float = STANDARD_ATMOSPHERE
+    ambient_temperature: float | None = None
+    pressure_given: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class AnswerOptions:
+    units: Literal["metric", "SI", "US"] = "metric"
+    detail: Literal["full", "brief"] = "full"
+    work_positive: Literal["into_system", "out_of_system"] = "into_system"
+    agreement: float = 1e-6
+    coverage: float = 0.95
+
+
+@dataclass(frozen=True, slots=True)
+class Case:
+    title: str
+    system: Literal["steady_flow", "closed", "transient"]
+    site: Site
+    fluids: Mapping[str, Fluid]
+    boundaries: tuple[Boundary, ...]
+    streams: tuple[Stream, ...]
+    transfers: tuple[Transfer, ...]
+    relations: tuple[Relation, ...]
+    limits: tuple[Limit, ...]
+    answer: AnswerOptions
+
+    def quantities(self) -> Iterator[Quantity]:
+        """Every quantity that the case mentions, in the order of the request."""
+        for item in (*self.streams, *self.transfers, *self.relations):
+            yield from item.quantities.values()

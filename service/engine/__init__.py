@@ -1,0 +1,1 @@
+"""Equations put in an order, and solved. Knows names, incidence and residuals, and no thermodynamics."""

@@ -1,0 +1,333 @@
+"""Running a plan, on one set of numbers or on columns of them."""
+
+from __future__ import annotations
+
+import math
+import time
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from service.engine.model import TINY, Column, Model, Value, Values
+from service.engine.plan import Closing, EquationCloses, Iterated, Lookup, Plan, Rearranged, Step
+from service.engine.roots import ACCEPTED, Nearest, bracketed_root, damped_newton
+from service.errors import CaseError, Issue, NoSolution, NotConverged, TimeBudgetExceeded
+
+
+@dataclass(slots=True)
+class Run:
+    """What a run found. values: one entry a variable (NaN where undetermined); lookups: node → all its members."""
+
+    values: Values
+    lookups: dict[int, Mapping[str, float]] = field(default_factory=dict)
+    residuals: dict[int, float] = field(default_factory=dict)
+    """Step number → relative residual of an iterated step."""
+    failures: dict[int, CaseError] = field(default_factory=dict)
+    """Row → why it has no answer (column runs only)."""
+
+
+class _Executor:
+    """Executes steps on one shared list of values; `deadline` is a time.monotonic() value or None."""
+
+    def __init__(self, model: Model, values: Values, deadline: float | None) -> None:
+        self.model = model
+        self.values = values
+        self.deadline = deadline
+        self.lookups: dict[int, Mapping[str, float]] = {}
+        self.warm: dict[int, float] = {}
+
+    def step(self, step: Step) -> float:
+        """Do one step on scalars; returns its relative residual (0 where nothing was iterated)."""
+        if isinstance(step, Lookup):
+            self.lookup(step)
+        elif isinstance(step, Rearranged):
+            self.values[step.variable] = self._rearranged(step)
+        else:
+            return self.iterate(step)
+        return 0.0
+
+    def lookup(self, step: Lookup) -> None:
+        node = self.model.nodes[step.node]
+        members = node.members
+        found = node.evaluate(step.inputs, tuple(self.values[members[name]] for name in step.inputs))
+        self.lookups[step.node] = found
+        for name, variable in step.found:
+            self.values[variable] = found[name]
+
+    def _rearranged(self, step: Rearranged) -> float:
+        equation = self.model.equations[step.equation]
+        try:
+            value = float(equation.solve(step.variable, self.values))
+        except ZeroDivisionError:
+            value = math.nan
+        if not math.isfinite(value):
+            name = self.model.variables[step.variable].name
+            raise NoSolution(
+                f"{name} cannot be found from the {equation.name}: with the numbers given, the equation "
+                f"{equation.text(self._name)} has no finite, real solution.",
+                address=name,
+                hint="Check the quantities in this equation; one of them is zero, or has the wrong size or direction.",
+            )
+        return value
+
+    def _name(self, variable: int) -> str:
+        return self.model.variables[variable].name
+
+    def closing(self, closing: Closing) -> tuple[float, float]:
+        """(residual, scale) of a closing with the present values."""
+        if isinstance(closing, EquationCloses):
+            equation = self.model.equations[closing.equation]
+            return float(equation.residual(self.values)), float(equation.scale(self.values))
+        looked_up = self.lookups[closing.node][closing.member]
+        held = self.values[closing.variable]
+        return looked_up - held, max(abs(looked_up), abs(held), TINY)
+
+    def iterate(self, step: Iterated) -> float:
+        if self.deadline is not None and time.monotonic() > self.deadline:
+            raise TimeBudgetExceeded("The time budget was used up before the case was solved.")
+        if len(step.assumed) == 1:
+            self._bracketed(step)
+        else:
+            self._simultaneous(step)
+        residual = 0.0
+        for closing in step.closings:
+            r, scale = self.closing(closing)
+            residual = max(residual, abs(r) / scale)
+        for variable in step.assumed:
+            self.warm[variable] = self.values[variable]
+        return residual
+
+    def _evaluate(self, step: Iterated) -> list[float]:
+        if self.deadline is not None and time.monotonic() > self.deadline:
+            raise _OutOfTimeError
+        for inner in step.inner:
+            self.step(inner)
+        out = []
+        for closing in step.closings:
+            residual, scale = self.closing(closing)
+            out.append(residual / scale)
+        return out
+
+    def _start(self, variable: int) -> float | None:
+        v = self.model.variables[variable]
+        return self.warm.get(variable, v.near if v.near is not None else v.start)
+
+    def _bracketed(self, step: Iterated) -> None:
+        (variable,) = step.assumed
+        v = self.model.variables[variable]
+
+        def function(x: float) -> float:
+            self.values[variable] = x
+            return self._evaluate(step)[0]
+
+        start = self._start(variable)
+        width = 0.01 * v.scale if variable in self.warm else 0.05 * v.scale
+        try:
+            root = bracketed_root(function, v.lower, v.upper, start, width)
+        except _OutOfTimeError:
+            raise _budget(v.name) from None
+        if isinstance(root, Nearest):
+            raise self._no_root(step, v.name, root)
+        function(root)
+
+    def _no_root(self, step: Iterated, name: str, nearest: Nearest) -> NoSolution:
+        closing = step.closings[0]
+        what = self.model.equations[closing.equation].name if isinstance(closing, EquationCloses) else (
+            f"{self.model.nodes[closing.node].name}"
+        )  # fmt: skip
+        if math.isnan(nearest.argument):
+            reason = nearest.refusal.detail if nearest.refusal else "nowhere could the equations be evaluated."
+            return NoSolution(f"No value of {name} satisfies the {what}: {reason}", address=name)
+        return NoSolution(
+            f"No value of {name} satisfies the {what}. The nearest miss is at {name} = {nearest.argument:.6g} "
+            f"(SI), where the equation is still off by {nearest.residual:.3g} of its largest term.",
+            address=name,
+            hint="The given values ask for more than physics allows here; relax one of them, "
+            "or bound the search with `between`.",
+        )
+
+    def _simultaneous(self, step: Iterated) -> None:
+        variables = [self.model.variables[v] for v in step.assumed]
+
+        def function(point: Column) -> Column:
+            for variable, x in zip(step.assumed, point, strict=True):
+                self.values[variable] = float(x)
+            return np.array(self._evaluate(step))
+
+        start = np.array([self._first_guess(v) for v in step.assumed])
+        lower = np.array([v.lower for v in variables])
+        upper = np.array([v.upper for v in variables])
+        scale = np.array([v.scale for v in variables])
+        try:
+            point, residual = damped_newton(function, start, lower, upper, scale)
+            if residual <= ACCEPTED:
+                function(point)
+        except _OutOfTimeError:
+            raise _budget(variables[0].name) from None
+        if residual > ACCEPTED:
+            names = ", ".join(v.name for v in variables)
+            raise NotConverged(
+                f"The equations that tie {names} together were not satisfied; the best point found is still off by "
+                f"{residual:.3g} of the largest term.",
+                [
+                    Issue("assumed while solving", v.name, "Give `near` or `between` for this quantity.")
+                    for v in variables
+                ],
+            )
+
+    def _first_guess(self, variable: int) -> float:
+        start = self._start(variable)
+        if start is not None:
+            return start
+        v = self.model.variables[variable]
+        return 0.5 * (v.lower + v.upper) if math.isfinite(v.lower) and math.isfinite(v.upper) else v.scale
+
+
+class _OutOfTimeError(Exception):
+    """The deadline passed inside of an iteration."""
+
+
+def _budget(name: str) -> TimeBudgetExceeded:
+    return TimeBudgetExceeded(
+        f"The time budget was used up while {name} was being iterated.", address=name,
+        hint="Start nearer (`near`), bound the search (`between`), or ask for less at once.",
+    )  # fmt: skip
+
+
+def run(plan: Plan, deadline: float | None = None) -> Run:
+    """Execute the plan on the scalars that the model gives. Raises CaseError where a step cannot be done."""
+    values: Values = [math.nan] * len(plan.model.variables)
+    for variable, value in plan.model.given.items():
+        values[variable] = value
+    executor = _Executor(plan.model, values, deadline)
+    residuals = {}
+    for number, step in enumerate(plan.steps):
+        residual = executor.step(step)
+        if isinstance(step, Iterated):
+            residuals[number] = residual
+    return Run(values, executor.lookups, residuals)
+
+
+def surplus_residuals(plan: Plan, done: Run) -> list[tuple[Closing, float]]:
+    """Relative disagreement of everything that is given more than once (scalar runs)."""
+    executor = _Executor(plan.model, done.values, None)
+    executor.lookups = done.lookups
+    out = []
+    for closing in plan.surplus:
+        residual, scale = executor.closing(closing)
+        out.append((closing, abs(residual) / scale))
+    return out
+
+
+def run_columns(plan: Plan, columns: Mapping[int, Column], rows: int, deadline: float | None = None) -> Run:
+    """Execute the plan with some given variables replaced by columns; a bad row costs only its own row."""
+    values: Values = [math.nan] * len(plan.model.variables)
+    for variable, value in plan.model.given.items():
+        values[variable] = value
+    for variable, column in columns.items():
+        values[variable] = column
+    done = Run(values)
+    runner = _ColumnRunner(plan.model, done, rows, deadline)
+    for step in plan.steps:
+        runner.step(step)
+    return done
+
+
+class _ColumnRunner:
+    """Steps on columns: algebra in numpy, look-ups by the node's own column call, iterations row by row."""
+
+    def __init__(self, model: Model, done: Run, rows: int, deadline: float | None) -> None:
+        self.model = model
+        self.done = done
+        self.values = done.values
+        self.rows = rows
+        self.deadline = deadline
+
+    def step(self, step: Step) -> None:
+        if isinstance(step, Lookup):
+            self._lookup(step.node, step.inputs, step.found)
+        elif isinstance(step, Rearranged):
+            with np.errstate(all="ignore"):
+                self.values[step.variable] = self._solve(step)
+        else:
+            self._iterate(step)
+
+    def _solve(self, step: Rearranged) -> Value:
+        try:
+            return self.model.equations[step.equation].solve(step.variable, self.values)
+        except ZeroDivisionError:
+            return math.nan
+
+    def _lookup(self, number: int, inputs: Sequence[str], found: Sequence[tuple[str, int]]) -> None:
+        node = self.model.nodes[number]
+        arguments = [self.values[node.members[name]] for name in inputs]
+        if not any(isinstance(a, np.ndarray) for a in arguments):
+            try:
+                result = node.evaluate(tuple(inputs), tuple(float(a) for a in arguments))
+            except CaseError as failure:
+                for row in range(self.rows):
+                    self.done.failures.setdefault(row, failure)
+                result = dict.fromkeys((name for name, _ in found), math.nan)
+            for name, variable in found:
+                self.values[variable] = result[name]
+            return
+        columns = tuple(np.broadcast_to(np.asarray(a, dtype=float), (self.rows,)) for a in arguments)
+        wanted = tuple(name for name, _ in found)
+        if not wanted:
+            return
+        result_columns, failures = node.evaluate_columns(tuple(inputs), columns, wanted)
+        for row, problem in failures.items():
+            self.done.failures.setdefault(row, problem)
+        for name, variable in found:
+            self.values[variable] = result_columns[name]
+
+    def _iterate(self, step: Iterated) -> None:
+        outputs = {v: np.full(self.rows, math.nan) for v in step.variables}
+        row_values: Values = list(self.values)
+        varying = [(v, a) for v, a in enumerate(self.values) if isinstance(a, np.ndarray)]
+        executor = _Executor(self.model, row_values, self.deadline)
+        for row in range(self.rows):
+            if row in self.done.failures:
+                continue
+            for v, column in varying:
+                row_values[v] = float(column[row])
+            try:
+                executor.iterate(step)
+            except TimeBudgetExceeded:
+                raise
+            except CaseError as failure:
+                self.done.failures.setdefault(row, failure)
+                executor.warm.clear()
+                continue
+            for v, out in outputs.items():
+                out[row] = row_values[v]
+        for v, out in outputs.items():
+            self.values[v] = out
+
+
+def agreement_columns(plan: Plan, done: Run, rows: int) -> Column:
+    """Largest relative disagreement per row among the surplus equations (NaN rows stay NaN)."""
+    worst = np.zeros(rows)
+    with np.errstate(all="ignore"):
+        for closing in plan.surplus:
+            if isinstance(closing, EquationCloses):
+                equation = plan.model.equations[closing.equation]
+                relative = abs(equation.residual(done.values)) / equation.scale(done.values)
+            else:
+                relative = _member_disagreement(plan.model, closing.node, closing.inputs, closing.member, done, rows)
+            worst = np.fmax(worst, np.broadcast_to(relative, (rows,)))
+    return worst
+
+
+def _member_disagreement(
+    model: Model, number: int, inputs: tuple[str, ...], member: str, done: Run, rows: int
+) -> Column:
+    node = model.nodes[number]
+    arguments = tuple(
+        np.broadcast_to(np.asarray(done.values[node.members[name]], dtype=float), (rows,)) for name in inputs
+    )
+    found, _ = node.evaluate_columns(inputs, arguments, (member,))
+    held = done.values[node.members[member]]
+    size = np.maximum(np.maximum(np.abs(found[member]), np.abs(held)), TINY)
+    return np.asarray(np.abs(found[member] - held) / size, dtype=float)

@@ -1,0 +1,205 @@
+"""Zeros of functions that may refuse some arguments: one unknown by bracketing, several by damped Newton steps.
+
+A function signals that an argument lies outside of what it covers by raising CaseError; such points are walked around.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+from scipy.optimize import brentq
+
+from service.errors import CaseError
+
+Vector = npt.NDArray[np.float64]
+ACCEPTED = 1e-9
+"""Largest residual, relative to its scale, that counts as a solution."""
+SCAN_POINTS = 48
+
+
+@dataclass(frozen=True, slots=True)
+class Nearest:
+    """The best point seen where no zero was found: argument, residual, and why other points were refused."""
+
+    argument: float
+    residual: float
+    refusal: CaseError | None
+
+
+@dataclass(slots=True)
+class _Watched:
+    """Calls the function, answers NaN where it refuses, and remembers the best point."""
+
+    function: Callable[[float], float]
+    best: float = math.nan
+    residual: float = math.inf
+    refusal: CaseError | None = None
+
+    def __call__(self, x: float) -> float:
+        try:
+            y = self.function(x)
+        except CaseError as refusal:
+            self.refusal = refusal
+            return math.nan
+        if abs(y) < self.residual:
+            self.best, self.residual = x, abs(y)
+        return y
+
+
+def bracketed_root(
+    function: Callable[[float], float], lower: float, upper: float, start: float | None, step: float
+) -> float | Nearest:
+    """A zero of `function` in [lower, upper]: the one nearest to `start` in the sense of the search below.
+
+    From the start (else from the middle) the search widens to both sides until the sign changes; if that fails, the
+    whole interval is scanned, upwards. brentq then closes in to the last bits. A sign change across a jump is no
+    zero and is passed over. The order of the search is fixed, so that the same case has the same answer.
+    """
+    watched = _Watched(function)
+    for bracket in _brackets(watched, lower, upper, start, step):
+        a, b = bracket
+        if a == b:
+            return a
+        root = _close_in(watched, a, b)
+        if root is not None:
+            return root
+    if watched.residual <= ACCEPTED:
+        return watched.best
+    return Nearest(watched.best, watched.residual, watched.refusal)
+
+
+def _close_in(watched: _Watched, a: float, b: float) -> float | None:
+    def strict(x: float) -> float:
+        y = watched(x)
+        if math.isnan(y):
+            raise _HoleError
+        return y
+
+    try:
+        root: float = brentq(strict, a, b, xtol=1e-14 * max(abs(a), abs(b)) + 1e-300, rtol=4e-16 * 4, maxiter=200)
+        settled = abs(strict(root))
+    except (_HoleError, RuntimeError):
+        return None
+    return root if settled <= ACCEPTED else (watched.best if watched.residual <= ACCEPTED else None)
+
+
+class _HoleError(Exception):
+    """The function refused an argument inside of a bracket."""
+
+
+def _brackets(
+    watched: _Watched, lower: float, upper: float, start: float | None, step: float
+) -> Iterator[tuple[float, float]]:
+    """Candidate intervals with a sign change, the search's favourite first; (x, x) for an exact hit."""
+    finite = math.isfinite(lower) and math.isfinite(upper)
+    x0 = start if start is not None else (0.5 * (lower + upper) if finite else 0.0)
+    x0 = min(max(x0, lower), upper)
+    y0 = watched(x0)
+    if y0 == 0.0:
+        yield x0, x0
+    edges = [[x0, y0], [x0, y0]]
+    width = step
+    for _ in range(60):
+        open_sides = [side for side in (0, 1) if (edges[0][0] > lower, edges[1][0] < upper)[side]]
+        if not open_sides:
+            break
+        for side in open_sides:
+            x, y = edges[side]
+            new = max(x - width, lower) if side == 0 else min(x + width, upper)
+            value = watched(new)
+            if value == 0.0:
+                yield new, new
+            elif y * value < 0:
+                yield (new, x) if side == 0 else (x, new)
+            edges[side] = [new, value]
+        width *= 1.8
+    if finite:
+        grid = np.linspace(lower, upper, SCAN_POINTS)
+        values = [watched(float(x)) for x in grid]
+        for i in range(SCAN_POINTS - 1):
+            if values[i] * values[i + 1] <= 0:
+                yield float(grid[i]), float(grid[i + 1])
+
+
+def damped_newton(
+    function: Callable[[Vector], Vector],
+    start: Vector,
+    lower: Vector,
+    upper: Vector,
+    scale: Vector,
+    tries: Sequence[float] = (1.0, 1.15, 0.85, 1.5, 0.6),
+) -> tuple[Vector, float]:
+    """A zero of a vector function near `start`, and the largest residual there (relative, not yet judged).
+
+    Newton steps with a difference Jacobian, halved until the residual falls and the function accepts the point;
+    several starts, each the first one stretched, before giving up with the best point seen.
+    """
+    best, best_residual = start, math.inf
+    for stretch in tries:
+        point, residual = _newton_from(function, np.clip(start * stretch, lower, upper), lower, upper, scale)
+        if residual < best_residual:
+            best, best_residual = point, residual
+        if best_residual <= ACCEPTED:
+            break
+    return best, best_residual
+
+
+def _norm(residual: Vector) -> float:
+    return float(np.max(np.abs(residual))) if np.all(np.isfinite(residual)) else math.inf
+
+
+def _attempt(function: Callable[[Vector], Vector], point: Vector) -> Vector | None:
+    try:
+        return function(point)
+    except CaseError:
+        return None
+
+
+def _newton_from(
+    function: Callable[[Vector], Vector], start: Vector, lower: Vector, upper: Vector, scale: Vector
+) -> tuple[Vector, float]:
+    point = start
+    here = _attempt(function, point)
+    if here is None:
+        return point, math.inf
+    norm = _norm(here)
+    for _ in range(60):
+        if norm <= 1e-14:
+            break
+        jacobian = _jacobian(function, point, here, scale, lower, upper)
+        step = np.linalg.lstsq(jacobian * scale, -here, rcond=None)[0] * scale
+        damping, improved = 1.0, False
+        while damping > 1e-4:
+            trial = np.clip(point + damping * step, lower, upper)
+            there = _attempt(function, trial)
+            if there is not None and _norm(there) < norm:
+                point, here, improved = trial, there, True
+                break
+            damping *= 0.5
+        if not improved:
+            break
+        norm = _norm(here)
+    return point, norm
+
+
+def _jacobian(
+    function: Callable[[Vector], Vector], point: Vector, here: Vector, scale: Vector, lower: Vector, upper: Vector
+) -> Vector:
+    columns = []
+    for i in range(len(point)):
+        step = 1e-7 * max(abs(point[i]), scale[i])
+        if point[i] + step > upper[i]:
+            step = -step
+        moved = point.copy()
+        moved[i] += step
+        there = _attempt(function, moved)
+        if there is None:
+            moved[i] = point[i] - step
+            step = -step
+            there = _attempt(function, moved)
+        columns.append(np.zeros_like(here) if there is None else (there - here) / step)
+    return np.column_stack(columns)
