@@ -157,5 +157,10 @@ class Case:
 
     def quantities(self) -> Iterator[Quantity]:
         """Every quantity that the case mentions, in the order of the request."""
-        for item in (*self.streams, *self.transfers, *self.relations):
-            yield from item.quantities.values()
+        for quantities in self._holders():
+            yield from quantities.values()
+
+    def _holders(self) -> Iterator[Quantities]:
+        yield from (stream.quantities for stream in self.streams)
+        yield from (transfer.quantities for transfer in self.transfers)
+        yield from (relation.quantities for relation in self.relations)

@@ -100,7 +100,7 @@ class _Executor:
 
     def _evaluate(self, step: Iterated) -> list[float]:
         if self.deadline is not None and time.monotonic() > self.deadline:
-            raise _OutOfTimeError
+            raise _OutOfTime
         for inner in step.inner:
             self.step(inner)
         out = []
@@ -125,7 +125,7 @@ class _Executor:
         width = 0.01 * v.scale if variable in self.warm else 0.05 * v.scale
         try:
             root = bracketed_root(function, v.lower, v.upper, start, width)
-        except _OutOfTimeError:
+        except _OutOfTime:
             raise _budget(v.name) from None
         if isinstance(root, Nearest):
             raise self._no_root(step, v.name, root)
@@ -163,7 +163,7 @@ class _Executor:
             point, residual = damped_newton(function, start, lower, upper, scale)
             if residual <= ACCEPTED:
                 function(point)
-        except _OutOfTimeError:
+        except _OutOfTime:
             raise _budget(variables[0].name) from None
         if residual > ACCEPTED:
             names = ", ".join(v.name for v in variables)
@@ -184,7 +184,7 @@ class _Executor:
         return 0.5 * (v.lower + v.upper) if math.isfinite(v.lower) and math.isfinite(v.upper) else v.scale
 
 
-class _OutOfTimeError(Exception):
+class _OutOfTime(Exception):
     """The deadline passed inside of an iteration."""
 
 

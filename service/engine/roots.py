@@ -76,18 +76,18 @@ def _close_in(watched: _Watched, a: float, b: float) -> float | None:
     def strict(x: float) -> float:
         y = watched(x)
         if math.isnan(y):
-            raise _HoleError
+            raise _Hole
         return y
 
     try:
         root: float = brentq(strict, a, b, xtol=1e-14 * max(abs(a), abs(b)) + 1e-300, rtol=4e-16 * 4, maxiter=200)
         settled = abs(strict(root))
-    except (_HoleError, RuntimeError):
+    except (_Hole, RuntimeError):
         return None
     return root if settled <= ACCEPTED else (watched.best if watched.residual <= ACCEPTED else None)
 
 
-class _HoleError(Exception):
+class _Hole(Exception):
     """The function refused an argument inside of a bracket."""
 
 
