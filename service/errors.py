@@ -25,7 +25,7 @@ addresses into JSON Pointers. Nothing here knows of HTTP beyond the number that 
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 from typing import ClassVar
 
@@ -36,12 +36,20 @@ class Issue:
 
     address: `item.property` of the quantity at fault, or "" where none is.
     pointer: RFC 6901 pointer in fragment form into the request, where it is known already, else "".
+    amounts: (quantity kind, value [SI]) for each {0}, {1} ... in the detail, so that the reader's units can be used.
     """
 
     detail: str
     address: str = ""
     hint: str = ""
     pointer: str = ""
+    amounts: tuple[tuple[str, float], ...] = ()
+
+    def told(self, show: Callable[[str, float], str]) -> str:
+        """The detail with its amounts written by `show(kind, value)`."""
+        if not self.amounts:
+            return self.detail
+        return self.detail.format(*(show(kind, value) for kind, value in self.amounts))
 
 
 class CaseError(Exception):
