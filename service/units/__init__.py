@@ -1,0 +1,8 @@
+"""Kinds of quantity and their units: a closed table, conversion to and from SI, and numbers with units as text."""
+
+from .kinds import KINDS, SYSTEMS, System
+from .number import split_quantity
+from .spelling import MAX_LENGTH
+from .table import Kind, Unit, UnitTable
+
+__all__ = ["KINDS", "MAX_LENGTH", "SYSTEMS", "Kind", "System", "Unit", "UnitTable", "split_quantity"]
