@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 
 from service.balance.builder import Builder, BuiltCase
 from service.balance.case import Case
@@ -10,12 +10,18 @@ from service.balance.relations import add_relation
 from service.fluids.protocol import Fluid
 
 
-def build_steady_flow(case: Case, fluids: Mapping[str, Fluid | None]) -> BuiltCase:
-    """The model of a steady-flow case; fluids: stream id → property model (None in a pure metering network)."""
-    builder = Builder(case, fluids)
+def build_steady_flow(case: Case, fluids: Mapping[str, Fluid | None], also: Sequence[str] = ()) -> BuiltCase:
+    """The model of a steady-flow case; fluids: stream id → property model (None in a pure metering network).
+
+    also: addresses that get values, or are asked for, beyond what the case says (the columns of a series).
+    """
+    builder = Builder(case, fluids, also)
     for stream in case.streams:
         for name in stream.quantities:
             builder.stream_quantity(stream, name)
+    for address in also:
+        if address.rpartition(".")[0] in builder.streams:
+            builder.address(address)
     builder.default_pressures()
     for relation in case.relations:
         for address in relation.addresses:

@@ -7,7 +7,7 @@ The builder owns the variables; the balances are written here, the relations in 
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Collection, Mapping
 from dataclasses import dataclass, field
 
 from service.balance.case import STANDARD_GRAVITY, STATE_PROPERTIES, Case, Quantity, Stream
@@ -21,6 +21,7 @@ from service.fluids.protocol import Fluid
 NORMAL_MOLAR_DENSITY = 101_325.0 / (8.314462618 * 273.15)
 """[mol/m3] ideal gas at 0 degC and 101.325 kPa; R by CODATA 2018."""
 
+_FLOWS = ("mass_flow", "molar_flow", "volume_flow", "normal_volume_flow")
 _PRESSURE_SAYING = {"p", "x", "superheat", "subcooling"}
 
 
@@ -49,7 +50,9 @@ class BuiltCase:
 
 
 class Builder:
-    def __init__(self, case: Case, fluids: Mapping[str, Fluid | None]) -> None:
+    """Writes a case's equations. `also_given`: addresses that will have values beyond those the case gives."""
+
+    def __init__(self, case: Case, fluids: Mapping[str, Fluid | None], also_given: Collection[str] = ()) -> None:
         self.case = case
         self.built = BuiltCase(case, dict(fluids))
         self.model = self.built.model
@@ -58,8 +61,30 @@ class Builder:
         self.relations = {r.id: r for r in case.relations}
         self.mass_only = mass_only(case)
         self.quantities: dict[str, Quantity] = {q.address: q for q in case.quantities()}
+        self.built.circuits = circuits(case, fluids)
+        self._flow_of = self._shared_flows(also_given)
 
     # -- variables ---------------------------------------------------------------------------------------------
+
+    def _shared_flows(self, also_given: Collection[str]) -> dict[str, str]:
+        """Stream → the stream whose flow it has: what passes a boundary unbranched is one flow with one variable.
+
+        Where both ends have a value of their own, they stay apart and the mass balance compares them.
+        """
+        given = {a for a, q in self.quantities.items() if q.value is not None} | set(also_given)
+
+        def metered(streams: Collection[str]) -> int:
+            return sum(f"{s}.{name}" in given for s in streams for name in _FLOWS)
+
+        group = {s.id: {s.id} for s in self.case.streams}
+        for circuit in self.built.circuits:
+            if len(circuit.inflows) == len(circuit.outflows) == 1 and not circuit.component:
+                a, b = (self.case.streams[n].id for n in (circuit.inflows[0], circuit.outflows[0]))
+                if group[a] is not group[b] and metered(group[a]) + metered(group[b]) <= 1:
+                    joined = group[a] | group[b]
+                    group.update(dict.fromkeys(joined, joined))
+        order = [s.id for s in self.case.streams]
+        return {s: min(group[s], key=lambda m: (metered((m,)) == 0, order.index(m))) for s in order}
 
     def variable(self, item: str, name: str, trait: Trait) -> int:
         """The variable of `item.name`, made with its trait, its bounds and its given value when it is new."""
@@ -83,7 +108,8 @@ class Builder:
         if quantity.between is not None:
             variable.lower = max(variable.lower, quantity.between[0])
             variable.upper = min(variable.upper, quantity.between[1])
-        variable.near = quantity.near
+        if quantity.near is not None:
+            variable.near = quantity.near
 
     def address(self, address: str) -> int:
         """The variable that an address names; flows and state properties come into being as they are mentioned."""
@@ -154,6 +180,8 @@ class Builder:
         """The variable of a flow quantity of a stream, with the equation that ties it to the mass flow."""
         if f"{stream.id}.{name}" in self.model.index:
             return self.model.index[f"{stream.id}.{name}"]
+        if name == "mass_flow" and self._flow_of[stream.id] != stream.id:
+            return self._shared_flow(stream)
         number = self.variable(stream.id, name, STREAM[name])
         if name in ("mass_flow", "dry_air_flow") and self.is_humid(stream):
             self._tie_moist_flow(stream)
@@ -174,6 +202,15 @@ class Builder:
                 f"{stream.id}.dry_air_flow: the stream is not humid air.", address=f"{stream.id}.dry_air_flow",
                 hint="Use mass_flow.",
             )  # fmt: skip
+        return number
+
+    def _shared_flow(self, stream: Stream) -> int:
+        """The variable of the flow that this stream shares, made known under this stream's address too."""
+        number = self.flow(self.streams[self._flow_of[stream.id]], "mass_flow")
+        address = f"{stream.id}.mass_flow"
+        self.model.index[address] = number
+        if address in self.quantities:
+            self._apply(number, self.quantities[address])
         return number
 
     def _tie_moist_flow(self, stream: Stream) -> None:
@@ -226,15 +263,13 @@ class Builder:
         return fluid is not None and fluid.pressure_optional and bool(energetic)
 
     def mass_balances(self) -> None:
-        found = circuits(self.case, self.built.fluids)
-        dropped = dependent_circuits(found)
-        for number, circuit in enumerate(found):
+        dropped = dependent_circuits(self.built.circuits)
+        for number, circuit in enumerate(self.built.circuits):
             terms = [t for i in circuit.inflows for t in self._mass_terms(i, circuit, 1.0)]
             terms += [t for i in circuit.outflows for t in self._mass_terms(i, circuit, -1.0)]
             balance = Polynomial.of(circuit.name, terms)
-            self.built.circuits.append(circuit)
             self.built.mass_balances.append(balance)
-            if number in dropped:
+            if number in dropped or len(balance.variables) < len(circuit.inflows) + len(circuit.outflows):
                 self.model.implied.append(balance)
             else:
                 self.model.equations.append(balance)
@@ -288,8 +323,10 @@ class Builder:
         """Of boundaries that exchange energy only among themselves, one balance follows from the others."""
         numbers = {e.boundary: i for i, e in enumerate(self.built.energy_balances)}
         links, open_ends = [], set()
-        for item in (*self.case.streams, *self.case.transfers):
-            ends = [numbers.get(b) if b is not None else None for b in (item.source, item.target)]
+        crossings = [(s.source, s.target) for s in self.case.streams]
+        crossings += [(t.source, t.target) for t in self.case.transfers]
+        for source, target in crossings:
+            ends = [numbers.get(b) if b is not None else None for b in (source, target)]
             if ends[0] is not None and ends[1] is not None:
                 links.append((ends[0], ends[1]))
             else:

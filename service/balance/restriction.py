@@ -58,7 +58,7 @@ def mass_flux(fluid: Fluid, p1: float, T1: float, h1: float, s1: float, rho1: fl
 
 
 def _is_liquid(fluid: Fluid, p1: float, rho1: float, h1: float) -> bool:
-    return fluid.state(("p", "h"), (p1, h1)).phase == "liquid"
+    return str(fluid.state(("p", "h"), (p1, h1)).phase) == "liquid"
 
 
 def _ideal_gas_flux(fluid: Fluid, p1: float, T1: float, p2: float) -> MassFlux:
@@ -75,7 +75,7 @@ def _ideal_gas_flux(fluid: Fluid, p1: float, T1: float, p2: float) -> MassFlux:
 def _isentropic_flux(fluid: Fluid, p1: float, h1: float, s1: float, p2: float) -> MassFlux:
     def flux(p: float) -> float:
         state = fluid.state(("p", "s"), (p, s1)).values
-        return state["rho"] * math.sqrt(max(2 * (h1 - state["h"]), 0.0))
+        return float(state["rho"] * math.sqrt(max(2 * (h1 - state["h"]), 0.0)))
 
     best = minimize_scalar(lambda p: -flux(p), bounds=(p2, p1), method="bounded", options={"xatol": 1e-7 * p1})
     throat = float(best.x)

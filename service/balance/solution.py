@@ -6,6 +6,9 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 from typing import Literal, TypeAlias
 
+import numpy as np
+import numpy.typing as npt
+
 from service.balance.case import Case
 
 Method: TypeAlias = Literal["rearranged", "property lookup", "bracketed root", "simultaneous"]
@@ -163,7 +166,7 @@ class SeriesResult:
     """Columns of a series in SI: address → values; problem: row → problem type ("" where solved)."""
 
     rows: int
-    columns: dict[str, object]
+    columns: dict[str, npt.NDArray[np.float64]]
     kinds: dict[str, str]
     problems: dict[int, str]
     details: dict[int, str]

@@ -18,7 +18,7 @@ class FoundState(dict[str, float]):
 
 @dataclass(slots=True)
 class StateNode:
-    """name: "state of outlet"; owner: the item errors speak of; members: property → variable, shared where states meet."""
+    """owner: the item that errors speak of; members: property → variable, shared where two states meet."""
 
     name: str
     owner: str

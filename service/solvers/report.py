@@ -32,15 +32,19 @@ STREAM_FLOWS = (
 def report(built: BuiltCase, plan: Plan, done: Run, surplus: list[SurplusCheck]) -> Solution:
     """Everything an answer tells that follows from the run itself."""
     names = [v.name for v in built.model.variables]
-    answers = {names[v]: Found(names[v], built.kinds[v], float(done.values[v])) for v in sorted(built.model.wanted)}
-    in_order = {q.address: answers[q.address] for q in built.case.quantities() if q.address in answers}
+    index = built.model.index
+    answers = {
+        q.address: Found(q.address, built.kinds[index[q.address]], float(done.values[index[q.address]]))
+        for q in built.case.quantities()
+        if q.wanted
+    }
     return Solution(
         case=built.case,
         status="solved",
         names=names,
         kinds=built.kinds,
         values=done.values,
-        answers=in_order,
+        answers=answers,
         states=_states(built, done),
         ledger=_ledger(built, done),
         steps=[_step(plan, done, step, done.residuals.get(i, 0.0)) for i, step in enumerate(plan.steps)],

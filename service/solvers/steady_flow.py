@@ -50,12 +50,16 @@ def prepare(case: Case, catalogue: FluidCatalogue) -> tuple[BuiltCase, Plan]:
     """The case's model and its plan; per kilogram and second where nothing says how much flows."""
     fluids = resolve_fluids(case, catalogue)
     built = build_steady_flow(case, fluids)
+    return built, _plan(built)
+
+
+def _plan(built: BuiltCase) -> Plan:
     try:
-        return built, compile_plan(built.model)
-    except UnderSpecified as missing:
+        return compile_plan(built.model)
+    except UnderSpecified:
         if not _assume_unit_flow(built):
-            raise missing
-    return built, compile_plan(built.model)
+            raise
+    return compile_plan(built.model)
 
 
 def resolve_fluids(case: Case, catalogue: FluidCatalogue) -> dict[str, Fluid | None]:
@@ -157,17 +161,16 @@ def series(
     problem type; it costs no other row.
     """
     rows = len(next(iter(readings.values()))) if readings else 1
-    built = build_steady_flow(case, resolve_fluids(case, catalogue))
+    built = build_steady_flow(case, resolve_fluids(case, catalogue), (*readings, *report_addresses))
     reported = {address: _series_variable(built, address) for address in report_addresses}
     columns: dict[int, Column] = {}
     for address, column in readings.items():
         number = _series_variable(built, address)
         finite = column[np.isfinite(column)]
         built.model.given[number] = float(finite[0]) if len(finite) else 1.0
-        built.model.wanted.discard(number)
         columns[number] = column
-    built.model.wanted = {v for v in (*reported.values(), *built.model.wanted) if v not in built.model.given}
-    plan = compile_plan(built.model)
+    built.model.wanted = {v for v in reported.values() if v not in built.model.given}
+    plan = _plan(built)
     done = run_columns(plan, columns, rows, deadline)
     return _series_result(built, plan, done, columns, reported, rows)
 
@@ -195,7 +198,7 @@ def _series_result(
     bad[list(problems)] = True
     for number in columns:
         bad |= ~np.isfinite(columns[number])
-    out: dict[str, object] = {}
+    out: dict[str, Column] = {}
     for address, number in reported.items():
         column = np.array(np.broadcast_to(np.asarray(done.values[number], dtype=float), (rows,)))
         bad |= ~np.isfinite(column)
@@ -204,6 +207,6 @@ def _series_result(
         problems.setdefault(int(row), "no-solution")
         details.setdefault(int(row), "A reading is missing, or an equation has no finite solution in this row.")
     for column in out.values():
-        column[bad] = np.nan  # type: ignore[index]
+        column[bad] = np.nan
     kinds = {address: built.kinds[number] for address, number in reported.items()}
     return SeriesResult(rows, out, kinds, problems, details)

@@ -9,6 +9,7 @@ import math
 
 from service.balance.builder import BuiltCase
 from service.balance.case import Stream, Transfer
+from service.balance.network import connected_groups
 from service.balance.solution import EntropyCheck
 from service.engine.execute import Run
 
@@ -21,30 +22,53 @@ class _NotCheckable(Exception):
 
 
 def entropy_checks(built: BuiltCase, done: Run) -> list[EntropyCheck]:
-    """Entropy generation [W/K] of every boundary with an energy balance, with its verdict."""
+    """Entropy generation [W/K] of every boundary with an energy balance, with its verdict.
+
+    Boundaries that exchange heat at an unknown temperature (the two sides of an exchanger) are checked together.
+    """
     checks = []
-    for energy in built.energy_balances:
+    for group in _groups(built, done):
+        name = " + ".join(group)
         try:
-            checks.append(_check(built, done, energy.boundary))
+            checks.append(_check(built, done, name, set(group)))
         except _NotCheckable as reason:
-            checks.append(EntropyCheck(energy.boundary, None, "not_checked", str(reason)))
+            checks.append(EntropyCheck(name, None, "not_checked", str(reason)))
     return checks
 
 
-def _check(built: BuiltCase, done: Run, boundary: str) -> EntropyCheck:
+def _groups(built: BuiltCase, done: Run) -> list[list[str]]:
+    names = [e.boundary for e in built.energy_balances]
+    place = {name: i for i, name in enumerate(names)}
+    links = [
+        (place[t.source], place[t.target])
+        for t in built.case.transfers
+        if t.kind == "heat"
+        and t.source in place
+        and t.target in place
+        and _crossing_temperature(built, done, t) is None
+    ]
+    groups = sorted(connected_groups(range(len(names)), links))
+    return [[names[i] for i in group] for group in groups]
+
+
+def _check(built: BuiltCase, done: Run, name: str, group: set[str]) -> EntropyCheck:
     case = built.case
-    streams = [(s, -1.0) for s in case.streams if s.target == boundary]
-    streams += [(s, 1.0) for s in case.streams if s.source == boundary]
-    terms = [sign * _flow(built, done, s, len(streams)) * _entropy(built, done, s) for s, sign in streams]
+    streams = [(s, (s.source in group) * 1.0 - (s.target in group) * 1.0) for s in case.streams]
+    crossing = [(s, sign) for s, sign in streams if sign]
+    terms = [sign * _flow(built, done, s, len(crossing)) * _entropy(built, done, s) for s, sign in crossing]
+    at_ambient = []
     for transfer in case.transfers:
-        sign = (transfer.source == boundary) * 1.0 - (transfer.target == boundary) * 1.0
+        sign = (transfer.source in group) * 1.0 - (transfer.target in group) * 1.0
         if sign:
-            terms.append(sign * _entropy_of_transfer(built, done, transfer))
+            term, ambient = _entropy_of_transfer(built, done, transfer)
+            terms.append(sign * term)
+            at_ambient += [transfer.id] if ambient else []
     generation = sum(terms)
     largest = max((abs(t) for t in terms), default=0.0)
+    note = f" Counted at the site's ambient temperature: {', '.join(at_ambient)}." if at_ambient else ""
     if generation < -NOISE * largest:
-        return EntropyCheck(boundary, generation, "violated", "Entropy would be destroyed.")
-    return EntropyCheck(boundary, generation, "satisfied", "Entropy generation is not negative.")
+        return EntropyCheck(name, generation, "violated", f"Entropy would be destroyed.{note}")
+    return EntropyCheck(name, generation, "satisfied", f"Entropy generation is not negative.{note}")
 
 
 def _flow(built: BuiltCase, done: Run, stream: Stream, crossing: int) -> float:
@@ -66,18 +90,29 @@ def _entropy(built: BuiltCase, done: Run, stream: Stream) -> float:
     return s
 
 
-def _entropy_of_transfer(built: BuiltCase, done: Run, transfer: Transfer) -> float:
+def _entropy_of_transfer(built: BuiltCase, done: Run, transfer: Transfer) -> tuple[float, bool]:
+    """Entropy that goes with a transfer [W/K], in its stated direction; whether ambient temperature had to serve."""
     if transfer.kind == "fuel":
         raise _NotCheckable(f"{transfer.id} is a fuel; the entropy of its combustion is not modelled.")
     if transfer.kind != "heat":
-        return 0.0
+        return 0.0, False
     rate = done.values[built.model.index[f"{transfer.id}.rate"]]
     if not math.isfinite(rate):
         raise _NotCheckable(f"The rate of {transfer.id} is not known.")
     if rate == 0.0:
-        return 0.0
+        return 0.0, False
+    temperature = _crossing_temperature(built, done, transfer)
+    if temperature is not None:
+        return float(rate / temperature), False
+    ambient = built.case.site.ambient_temperature
+    if ambient is not None and None in (transfer.source, transfer.target):
+        return float(rate / ambient), True
+    raise _NotCheckable(f"{transfer.id} does not say at which `temperature` its heat crosses.")
+
+
+def _crossing_temperature(built: BuiltCase, done: Run, transfer: Transfer) -> float | None:
     for name in ("temperature", "source_temperature"):
         number = built.model.index.get(f"{transfer.id}.{name}")
         if number is not None and math.isfinite(done.values[number]):
-            return float(rate / done.values[number])
-    raise _NotCheckable(f"{transfer.id} does not say at which `temperature` its heat crosses.")
+            return float(done.values[number])
+    return None

@@ -23,12 +23,13 @@ def uncertainties(built: BuiltCase, plan: Plan, done: Run) -> dict[str, Uncertai
     slopes = sensitivities(plan, done, inputs)
     names = built.model.variables
     result = {}
-    for answer in sorted(built.model.wanted):
+    for address in (q.address for q in built.case.quantities() if q.wanted):
+        answer = built.model.index[address]
         parts = {
             names[v].name: (float(slope), float(slope) * stated[v])
             for v, slope in zip(inputs, slopes[answer], strict=True)
         }
         variance = sum(part**2 for _, part in parts.values())
         shares = {n: (slope, part**2 / variance if variance else 0.0) for n, (slope, part) in parts.items()}
-        result[names[answer].name] = Uncertainty(variance**0.5, shares)
+        result[address] = Uncertainty(variance**0.5, shares)
     return result
