@@ -36,7 +36,7 @@ class Issue:
 
     address: `item.property` of the quantity at fault, or "" where none is.
     pointer: RFC 6901 pointer in fragment form into the request, where it is known already, else "".
-    amounts: (quantity kind, value [SI]) for each {0}, {1} ... in the detail, so that the reader's units can be used.
+    amounts: (quantity kind or address, value [SI]) for each {0}, {1} ... in the detail, for the reader's own units.
     """
 
     detail: str

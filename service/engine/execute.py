@@ -9,6 +9,7 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
+from service.engine.affine import is_algebraic, solve_affine
 from service.engine.model import TINY, Column, Model, Value, Values
 from service.engine.plan import Closing, EquationCloses, Iterated, Lookup, Plan, Rearranged, Step
 from service.engine.roots import ACCEPTED, Nearest, bracketed_root, damped_newton
@@ -86,10 +87,11 @@ class _Executor:
     def iterate(self, step: Iterated) -> float:
         if self.deadline is not None and time.monotonic() > self.deadline:
             raise TimeBudgetExceeded("The time budget was used up before the case was solved.")
-        if len(step.assumed) == 1:
-            self._bracketed(step)
-        else:
-            self._simultaneous(step)
+        if not (is_algebraic(step) and self._linear(step)):
+            if len(step.assumed) == 1:
+                self._bracketed(step)
+            else:
+                self._simultaneous(step)
         residual = 0.0
         for closing in step.closings:
             r, scale = self.closing(closing)
@@ -97,6 +99,17 @@ class _Executor:
         for variable in step.assumed:
             self.warm[variable] = self.values[variable]
         return residual
+
+    def _linear(self, step: Iterated) -> bool:
+        """Try the block as a linear one; leaves floats behind where it succeeds."""
+        try:
+            holds = bool(solve_affine(self.model, step, self.values, 1)[0])
+        except ZeroDivisionError:
+            return False
+        if holds:
+            for variable in step.variables:
+                self.values[variable] = float(np.asarray(self.values[variable]).item())
+        return holds
 
     def _evaluate(self, step: Iterated) -> list[float]:
         if self.deadline is not None and time.monotonic() > self.deadline:
@@ -139,13 +152,16 @@ class _Executor:
         if math.isnan(nearest.argument):
             reason = nearest.refusal.detail if nearest.refusal else "nowhere could the equations be evaluated."
             return NoSolution(f"No value of {name} satisfies the {what}: {reason}", address=name)
-        return NoSolution(
-            f"No value of {name} satisfies the {what}. The nearest miss is at {name} = {nearest.argument:.6g} "
-            f"(SI), where the equation is still off by {nearest.residual:.3g} of its largest term.",
-            address=name,
-            hint="The given values ask for more than physics allows here; relax one of them, "
-            "or bound the search with `between`.",
+        summary = f"No value of {name} satisfies the {what}."
+        near = (
+            f"{summary} The nearest miss is at {{0}}, where the equation is still off by {nearest.residual:.3g} of its "
+            "largest term."
         )
+        if nearest.refusal is not None:
+            refused = nearest.refusal.detail.replace("{", "{{").replace("}", "}}")
+            near += f" Elsewhere the search met: {refused}"
+        hint = "The given values ask for more than physics allows here: relax one, or bound the search with `between`."
+        return NoSolution(summary, [Issue(near, name, hint, amounts=((name, nearest.argument),))])
 
     def _simultaneous(self, step: Iterated) -> None:
         variables = [self.model.variables[v] for v in step.assumed]
@@ -283,11 +299,16 @@ class _ColumnRunner:
             self.values[variable] = result_columns[name]
 
     def _iterate(self, step: Iterated) -> None:
+        todo = list(range(self.rows))
         outputs = {v: np.full(self.rows, math.nan) for v in step.variables}
+        if is_algebraic(step):
+            holds = solve_affine(self.model, step, self.values, self.rows) > 0
+            outputs = {v: np.where(holds, self.values[v], math.nan) for v in step.variables}
+            todo = np.flatnonzero(~holds).tolist()
         row_values: Values = list(self.values)
         varying = [(v, a) for v, a in enumerate(self.values) if isinstance(a, np.ndarray)]
         executor = _Executor(self.model, row_values, self.deadline)
-        for row in range(self.rows):
+        for row in todo:
             if row in self.done.failures:
                 continue
             for v, column in varying:

@@ -19,6 +19,7 @@ from service.balance.solution import (
     SurplusCheck,
 )
 from service.balance.state_node import FoundState, StateNode
+from service.engine.affine import is_algebraic
 from service.engine.execute import Run
 from service.engine.model import TINY, Equation, Polynomial, Show, Term, Values
 from service.engine.plan import Closing, EquationCloses, Lookup, Plan, Rearranged, Step
@@ -161,7 +162,8 @@ def _step(plan: Plan, done: Run, step: Step, residual: float) -> StepRecord:
     def text(show: Show) -> str:
         return "; ".join(_closing_text(plan, c, show) for c in step.closings)
 
-    method: Method = "bracketed root" if len(step.assumed) == 1 else "simultaneous"
+    one_curve = len(step.assumed) == 1 and not is_algebraic(step)
+    method: Method = "bracketed root" if one_curve else "simultaneous"
     return StepRecord(method, names, step.assumed, text, residual, inner)
 
 
