@@ -10,8 +10,8 @@ import math
 from collections.abc import Collection, Mapping
 from dataclasses import dataclass, field
 
-from service.balance.case import STANDARD_GRAVITY, STATE_PROPERTIES, Case, Quantity, Stream
-from service.balance.network import Circuit, circuits, connected_groups, dependent_circuits, mass_only
+from service.balance.case import STANDARD_GRAVITY, STATE_PROPERTIES, Case, Quantity, Stream, Transfer
+from service.balance.network import Circuit, circuits, connected_groups, dependent_circuits, ends_by_boundary, mass_only
 from service.balance.properties import RELATION, STATE, STREAM, TRANSFER, Trait
 from service.balance.state_node import StateNode
 from service.engine.model import Model, Polynomial, Term
@@ -62,6 +62,15 @@ class Builder:
         self.mass_only = mass_only(case)
         self.quantities: dict[str, Quantity] = {q.address: q for q in case.quantities()}
         self.built.circuits = circuits(case, fluids)
+        self.ends = ends_by_boundary(case)
+        self.circuits_of: dict[str, list[Circuit]] = {b.id: [] for b in case.boundaries}
+        for circuit in self.built.circuits:
+            self.circuits_of[circuit.boundary].append(circuit)
+        self.transfers_into: dict[str | None, list[Transfer]] = {}
+        self.transfers_from: dict[str | None, list[Transfer]] = {}
+        for transfer in case.transfers:
+            self.transfers_into.setdefault(transfer.target, []).append(transfer)
+            self.transfers_from.setdefault(transfer.source, []).append(transfer)
         self._flow_of = self._shared_flows(also_given)
 
     # -- variables ---------------------------------------------------------------------------------------------
@@ -284,17 +293,16 @@ class Builder:
         return [Term(sign, ((self.flow(stream, "mass_flow"), 1),), "", "mass flow", stream.id)]
 
     def energy_balance(self, boundary: str) -> None:
-        crossing = [(s, 1.0) for s in self.case.streams if s.target == boundary]
-        crossing += [(s, -1.0) for s in self.case.streams if s.source == boundary]
-        transfers = [(t, 1.0) for t in self.case.transfers if t.target == boundary]
-        transfers += [(t, -1.0) for t in self.case.transfers if t.source == boundary]
+        crossing = [(end.stream, 1.0 if end.enters else -1.0) for end in self.ends[boundary]]
+        transfers = [(t, 1.0) for t in self.transfers_into.get(boundary, ())]
+        transfers += [(t, -1.0) for t in self.transfers_from.get(boundary, ())]
         terms = [term for stream, sign in crossing for term in self._stream_energy(stream, sign, True)]
         for transfer, sign in transfers:
             rate = self.variable(transfer.id, "rate", TRANSFER["rate"])
             terms.append(Term(sign, ((rate, 1),), "", transfer.kind.replace("_", " "), transfer.id))
         name = f"energy balance of {boundary}"
         whole = solved = Polynomial.of(name, terms)
-        mine = [c for c in self.built.circuits if c.boundary == boundary]
+        mine = self.circuits_of[boundary]
         passes = len(crossing) == 2 and all(len(c.inflows) == len(c.outflows) == 1 for c in mine if not c.component)
         if passes and not transfers and not any(c.component for c in mine):
             per_mass = [term for stream, sign in crossing for term in self._stream_energy(stream, sign, False)]

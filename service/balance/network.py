@@ -4,12 +4,11 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
+from typing import NamedTuple
 
 from service.balance.case import STATE_PROPERTIES, Case, Stream
 from service.errors import Issue, SchemaViolation
 from service.fluids.protocol import Fluid
-
-SURROUNDINGS = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -32,24 +31,34 @@ class Circuit:
         return f"{what} of {self.boundary}{side}"
 
 
+class End(NamedTuple):
+    """Where a stream meets a boundary: its number, the side label there, and whether it enters."""
+
+    number: int
+    stream: Stream
+    label: str | None
+    enters: bool
+
+
 def fluid_keys(case: Case) -> dict[str, str | None]:
     """Fluid of each stream as the case names it; where it names none, the only one that its side allows.
 
     Raises SchemaViolation where several fluids are possible. None is left where no stream of a network names one.
     """
     found: dict[str, str | None] = {s.id: s.fluid for s in case.streams}
+    ends = ends_by_boundary(case)
     changed = True
     while changed:
         changed = False
         for stream in case.streams:
             if found[stream.id] is None:
-                choices = _possible(case, stream, found)
+                choices = _possible(ends, stream, found)
                 if len(choices) == 1:
                     found[stream.id] = choices.pop()
                     changed = True
     issues = []
     for stream in case.streams:
-        if found[stream.id] is None and (choices := _possible(case, stream, found)):
+        if found[stream.id] is None and (choices := _possible(ends, stream, found)):
             listed = ", ".join(sorted(choices))
             issues.append(
                 Issue(f"Stream {stream.id} names no fluid, and its boundary has several: {listed}.", stream.id,
@@ -60,23 +69,27 @@ def fluid_keys(case: Case) -> dict[str, str | None]:
     return found
 
 
-def _possible(case: Case, stream: Stream, found: Mapping[str, str | None]) -> set[str]:
-    """Fluids that neighbours suggest, the most specific hint first: same side, opposite direction, then any."""
+def ends_by_boundary(case: Case) -> dict[str, list[End]]:
+    """For each boundary the streams that end there, those that enter first."""
+    ends: dict[str, list[End]] = {b.id: [] for b in case.boundaries}
+    for number, stream in enumerate(case.streams):
+        if stream.target is not None:
+            ends[stream.target].append(End(number, stream, stream.side_target, True))
+    for number, stream in enumerate(case.streams):
+        if stream.source is not None:
+            ends[stream.source].append(End(number, stream, stream.side_source, False))
+    return ends
+
+
+def _possible(ends: Mapping[str, list[End]], stream: Stream, found: Mapping[str, str | None]) -> set[str]:
+    """Fluids that neighbours suggest: those of the same side where there are any, else those of the boundary."""
     for same_side in (True, False):
         choices: set[str] = set()
-        for other in case.streams:
-            key = found[other.id]
-            if other is stream or key is None:
-                continue
-            for end, label in ((stream.source, stream.side_source), (stream.target, stream.side_target)):
-                if end is None:
-                    continue
-                for other_end, other_label in (
-                    (other.source, other.side_source),
-                    (other.target, other.side_target),
-                ):
-                    if other_end == end and (not same_side or (label is not None and label == other_label)):
-                        choices.add(key)
+        for boundary, label in ((stream.source, stream.side_source), (stream.target, stream.side_target)):
+            for end in ends[boundary] if boundary is not None else ():
+                key = found[end.stream.id]
+                if key is not None and (not same_side or (label is not None and label == end.label)):
+                    choices.add(key)
         if choices:
             return choices
     return set()
@@ -85,16 +98,14 @@ def _possible(case: Case, stream: Stream, found: Mapping[str, str | None]) -> se
 def circuits(case: Case, fluids: Mapping[str, Fluid | None]) -> list[Circuit]:
     """Every mass balance of the case, boundary by boundary."""
     result = []
-    for boundary in case.boundaries:
-        ends = [(i, s, s.side_target, "in") for i, s in enumerate(case.streams) if s.target == boundary.id]
-        ends += [(i, s, s.side_source, "out") for i, s in enumerate(case.streams) if s.source == boundary.id]
-        humid = any(_kind(fluids[s.id]) == "humid_air" for _, s, _, _ in ends)
-        groups: dict[str, list[tuple[int, str | None, str]]] = {}
-        for i, stream, label, way in ends:
-            groups.setdefault(_family(fluids[stream.id], humid), []).append((i, label, way))
+    for boundary, ends in ends_by_boundary(case).items():
+        humid = any(_kind(fluids[end.stream.id]) == "humid_air" for end in ends)
+        groups: dict[str, list[End]] = {}
+        for end in ends:
+            groups.setdefault(_family(fluids[end.stream.id], humid), []).append(end)
         for members in groups.values():
             for label, part in _by_side(members).items():
-                result += _balances(case, fluids, boundary.id, label, part)
+                result += _balances(fluids, boundary, label, part)
     return result
 
 
@@ -109,33 +120,29 @@ def _family(fluid: Fluid | None, humid: bool) -> str:
     return "moist" if humid and (fluid.kind == "humid_air" or fluid.name == "water") else fluid.name
 
 
-def _by_side(members: list[tuple[int, str | None, str]]) -> dict[str, list[tuple[int, str]]]:
+def _by_side(members: list[End]) -> dict[str, list[End]]:
     """Split by side label, unless the labels only mark where the streams belong at their other ends."""
-    labels: dict[str | None, set[str]] = {}
-    for _, label, way in members:
-        labels.setdefault(label, set()).add(way)
+    labels: dict[str | None, set[bool]] = {}
+    for end in members:
+        labels.setdefault(end.label, set()).add(end.enters)
     passing = [label for label, ways in labels.items() if len(ways) == 2]
     if len(labels) == 1 or not passing:
         name = next(iter(labels)) if len(labels) == 1 else ""
-        return {name or "": [(i, way) for i, _, way in members]}
-    split: dict[str, list[tuple[int, str]]] = {}
-    for i, label, way in members:
-        split.setdefault(label or "", []).append((i, way))
+        return {name or "": members}
+    split: dict[str, list[End]] = {}
+    for end in members:
+        split.setdefault(end.label or "", []).append(end)
     return split
 
 
-def _balances(
-    case: Case, fluids: Mapping[str, Fluid | None], boundary: str, label: str, part: list[tuple[int, str]]
-) -> list[Circuit]:
-    inflows = tuple(i for i, way in part if way == "in")
-    outflows = tuple(i for i, way in part if way == "out")
-    air = {i for i, _ in part if _kind(fluids[case.streams[i].id]) == "humid_air"}
-    if not air:
-        return [Circuit(boundary, label, "", inflows, outflows)]
-    dry = Circuit(
-        boundary, label, "dry air", tuple(i for i in inflows if i in air), tuple(i for i in outflows if i in air)
-    )
-    return [dry, Circuit(boundary, label, "water", inflows, outflows)]
+def _balances(fluids: Mapping[str, Fluid | None], boundary: str, label: str, part: list[End]) -> list[Circuit]:
+    def circuit(component: str, ends: list[End]) -> Circuit:
+        inflows = tuple(end.number for end in ends if end.enters)
+        outflows = tuple(end.number for end in ends if not end.enters)
+        return Circuit(boundary, label, component, inflows, outflows)
+
+    air = [end for end in part if _kind(fluids[end.stream.id]) == "humid_air"]
+    return [circuit("dry air", air), circuit("water", part)] if air else [circuit("", part)]
 
 
 def connected_groups(nodes: Iterable[int], links: Iterable[tuple[int, int]]) -> list[list[int]]:
