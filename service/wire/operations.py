@@ -1,0 +1,225 @@
+"""What the service does, from document to document. Every operation parses, solves and dumps; none knows of HTTP."""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable, Mapping
+from typing import Any, TypeVar
+
+import numpy as np
+from service.fluids.catalogue import FluidCatalogue
+
+from service import solvers
+from service.balance.case import Case
+from service.balance.solution import Solution
+from service.errors import CaseError, Issue, NotFound, SchemaViolation
+from service.units import UnitTable
+from service.wire import series as columns
+from service.wire.addresses import AddressBook
+from service.wire.answering import DEFERENCE, Answer
+from service.wire.catalogue_pages import describe_fluids, describe_one_fluid, describe_units
+from service.wire.findings import Findings
+from service.wire.library import read_examples, read_schemas, schema_directory
+from service.wire.parsing import parse_case
+from service.wire.pointers import pointer
+from service.wire.presenting import Presenter
+from service.wire.provenance import provenance
+from service.wire.shapes import Shape, report
+from service.wire.stating import answer_state
+from service.wire.suggest import did_you_mean, quoted
+from service.wire.telling import told
+
+Document = dict[str, Any]
+Result = TypeVar("Result")
+
+
+class Operations:
+    """Built once by the composition root; every method may be called from several threads."""
+
+    def __init__(
+        self,
+        units: UnitTable,
+        catalogue: FluidCatalogue,
+        schemas: Mapping[str, Document],
+        examples: Mapping[str, Document],
+        time_budget: float | None = None,
+    ) -> None:
+        self.unit_table = units
+        self.catalogue = catalogue
+        self._schemas = schemas
+        self._examples = examples
+        self._time_budget = time_budget
+        self._case_shape = Shape("case", schemas)
+        self._series_shape = Shape("series-request", schemas)
+        self._states_shape = Shape("states-request", schemas)
+
+    @classmethod
+    def build(cls, settings: object = None) -> Operations:
+        """Read the files, build the tables and compile the schemas. `settings.time_budget` [s] bounds each solve."""
+        directory = schema_directory()
+        return cls(
+            UnitTable.build(),
+            FluidCatalogue(),
+            read_schemas(directory),
+            read_examples(directory),
+            getattr(settings, "time_budget", None),
+        )
+
+    # -- balances ----------------------------------------------------------------------------------------------
+
+    def solve(self, document: Any) -> Document:
+        """The answer to a case. Raises CaseError."""
+        case, presenter = self._parse(document)
+        solution: Solution = self._tell(
+            document, presenter, lambda: solvers.solve(case, self.catalogue, self._deadline())
+        )
+        return Answer(solution, presenter).document(document)
+
+    def check(self, document: Any) -> Document:
+        """The structural count of a case, without solving it. Raises CaseError."""
+        case, presenter = self._parse(document)
+        found = self._tell(document, presenter, lambda: solvers.check(case, self.catalogue))
+        return {
+            "status": "solvable",
+            "equations": found.equations,
+            "unknowns": list(found.unknowns),
+            "undetermined": list(found.undetermined),
+            "surplus": list(found.surplus),
+            "assumptions": list(found.assumptions),
+            "advisories": {"items": [], "deference": DEFERENCE},
+            "provenance": provenance((), document),
+        }
+
+    def _parse(self, document: Any) -> tuple[Case, Presenter]:
+        case = parse_case(document, self._case_shape, self.unit_table)
+        return case, Presenter(self.unit_table, case.answer.units, case.site.atmospheric_pressure)
+
+    def _deadline(self) -> float | None:
+        return None if self._time_budget is None else time.monotonic() + self._time_budget
+
+    @staticmethod
+    def _tell(document: Any, presenter: Presenter, work: Callable[[], Result]) -> Result:
+        """Do the work; an error is told in the units and the places of the request."""
+        try:
+            return work()
+        except CaseError as error:
+            raise told(error, AddressBook(document), presenter) from error
+
+    # -- series ------------------------------------------------------------------------------------------------
+
+    def series(self, document: Any) -> Document:
+        """The case over JSON columns. Raises CaseError where the request as a whole cannot be served."""
+        case, readings, asked = self._series_request(document)
+        presenter = Presenter(self.unit_table, case.answer.units, case.site.atmospheric_pressure)
+        book, findings = AddressBook(document["case"]), Findings()
+        plans, values = [], {}
+        for address, stated in readings.items():
+            place = pointer(("readings", address))
+            plan = columns.column_plan(address, stated.get("unit"), book, self.unit_table, findings, place)
+            if plan is not None:
+                plans.append(plan)
+                values[address] = _numbers(stated["values"], f"{place}/values", findings)
+        reported = columns.reported_addresses(asked, case, readings, book, findings)
+        findings.raise_any()
+        si, impossible = columns.columns_to_si(plans, values, self.unit_table, case.site.atmospheric_pressure)
+        kinds = {plan.address: plan.kind for plan in plans}
+        full = columns.with_columns(case, {a: (kinds[a], c) for a, c in si.items()}, reported)
+        names = [address for address, _ in reported]
+        result = self._tell(
+            document["case"], presenter, lambda: solvers.series(full, self.catalogue, si, names, self._deadline())
+        )
+        writer = columns.SeriesWriter(case, reported, presenter)
+        status = columns.statuses(result, impossible)
+        return {
+            "rows": result.rows,
+            "columns": {
+                name: {
+                    "unit": writer.units[name].symbol,
+                    "values": columns.numbers(writer.column(name, np.asarray(result.columns[name]))),
+                }
+                for name in names
+            },
+            "status": status,
+            "unsolved": columns.details(result, impossible, status),
+            "deference": DEFERENCE,
+            "provenance": provenance((), document),
+        }
+
+    def _series_request(self, document: Any) -> tuple[Case, Mapping[str, Any], list[str] | None]:
+        findings = Findings()
+        faults = self._series_shape.faults(document)
+        if faults:
+            report(faults, findings)
+            findings.raise_any()
+        try:
+            case = parse_case(document["case"], self._case_shape, self.unit_table)
+        except CaseError as error:
+            raise _inside_case(error) from error
+        readings = document["readings"]
+        lengths = {len(stated["values"]) for stated in readings.values()}
+        if len(lengths) > 1:
+            detail = f"The columns have different lengths: {', '.join(map(str, sorted(lengths)[:5]))}."
+            raise SchemaViolation(
+                detail, [Issue(detail, hint="Give every column a value or null in each row.", pointer="#/readings")]
+            )
+        return case, readings, document.get("report")
+
+    # -- states, fluids, units ---------------------------------------------------------------------------------
+
+    def states(self, document: Any) -> Document:
+        """The full state of a fluid. Raises CaseError."""
+        return answer_state(document, self._states_shape, self.unit_table, self.catalogue)
+
+    def fluids(self) -> Document:
+        """Every fluid that can be named."""
+        return describe_fluids(self.catalogue)
+
+    def fluid(self, name: str) -> Document:
+        """Limits of validity and source of one fluid. Raises UnknownFluid."""
+        return describe_one_fluid(name, self.catalogue, Presenter(self.unit_table))
+
+    def units(self) -> Document:
+        """Kinds of quantity and their units."""
+        return describe_units(self.unit_table)
+
+    # -- files -------------------------------------------------------------------------------------------------
+
+    def schemas(self) -> Document:
+        """Names and titles of the JSON Schemas."""
+        return {"schemas": [{"name": name, "title": str(s.get("title", name))} for name, s in self._schemas.items()]}
+
+    def schema(self, name: str) -> Document:
+        """One JSON Schema. Raises NotFound."""
+        return _named("schema", name, self._schemas)
+
+    def examples(self) -> Document:
+        """Names and titles of the ready cases."""
+        return {"examples": [{"name": name, "title": str(e.get("title", name))} for name, e in self._examples.items()]}
+
+    def example(self, name: str) -> Document:
+        """One ready case. Raises NotFound."""
+        return _named("example", name, self._examples)
+
+
+def _named(what: str, name: str, found: Mapping[str, Document]) -> Document:
+    if name not in found:
+        raise NotFound(f"There is no {what} {quoted(name)}.", hint=did_you_mean(name, found))
+    return found[name]
+
+
+def _numbers(values: list[float | None], place: str, findings: Findings) -> columns.Column:
+    try:
+        return np.array(values, dtype=np.float64)
+    except (OverflowError, ValueError):
+        findings.add(
+            SchemaViolation, "A value in this column is too large a number.", pointer=place, hint="Check the column."
+        )
+        return np.zeros(0)
+
+
+def _inside_case(error: CaseError) -> CaseError:
+    """The error of a case with its pointers moved into a series request."""
+    issues = [
+        Issue(i.detail, i.address, i.hint, "#/case" + i.pointer.removeprefix("#"), i.amounts) for i in error.issues
+    ]
+    return type(error)(error.detail, issues)
