@@ -4,6 +4,14 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 
+from service.balance.balances import (
+    add_energy_balance,
+    add_mass_balances,
+    add_transfer,
+    default_pressures,
+    give_starting_points,
+    imply_dependent_energy_balance,
+)
 from service.balance.builder import Builder, BuiltCase
 from service.balance.case import Case
 from service.balance.relations import add_relation
@@ -22,20 +30,20 @@ def build_steady_flow(case: Case, fluids: Mapping[str, Fluid | None], also: Sequ
     for address in also:
         if address.rpartition(".")[0] in builder.streams:
             builder.address(address)
-    builder.default_pressures()
+    default_pressures(builder)
     for relation in case.relations:
         for address in relation.addresses:
             builder.address(address)
     for limit in case.limits:
         builder.address(limit.of)
-    builder.mass_balances()
+    add_mass_balances(builder)
     for boundary in case.boundaries:
         if boundary.id not in builder.mass_only:
-            builder.energy_balance(boundary.id)
-    builder.drop_dependent_energy_balance()
+            add_energy_balance(builder, boundary.id)
+    imply_dependent_energy_balance(builder)
     for transfer in case.transfers:
-        builder.transfer_law(transfer.id)
+        add_transfer(builder, transfer.id)
     for relation in case.relations:
         add_relation(builder, relation)
-    builder.give_starting_points()
+    give_starting_points(builder)
     return builder.built

@@ -10,8 +10,8 @@ import math
 from collections.abc import Collection, Mapping
 from dataclasses import dataclass, field
 
-from service.balance.case import STANDARD_GRAVITY, STATE_PROPERTIES, Case, Quantity, Stream, Transfer
-from service.balance.network import Circuit, circuits, connected_groups, dependent_circuits, ends_by_boundary, mass_only
+from service.balance.case import STATE_PROPERTIES, Case, Quantity, Stream, Transfer
+from service.balance.network import Circuit, circuits, ends_by_boundary, mass_only
 from service.balance.properties import RELATION, STATE, STREAM, TRANSFER, Trait
 from service.balance.state_node import StateNode
 from service.engine.model import Model, Polynomial, Term
@@ -198,10 +198,10 @@ class Builder:
             self._tie_amount(stream, name, number)
         elif name == "volume_flow":
             m, rho = self.flow(stream, "mass_flow"), self.state(stream, "rho")
-            self._equation(f"volume flow of {stream.id}", Term(1.0, ((m, 1),)), Term(-1.0, ((rho, 1), (number, 1))))
+            self.equation(f"volume flow of {stream.id}", Term(1.0, ((m, 1),)), Term(-1.0, ((rho, 1), (number, 1))))
         elif name == "bore":
             m, rho, velocity = self.flow(stream, "mass_flow"), self.state(stream, "rho"), self.flow(stream, "velocity")
-            self._equation(
+            self.equation(
                 f"continuity of {stream.id}",
                 Term(1.0, ((m, 1),)),
                 Term(-math.pi / 4, ((rho, 1), (number, 2), (velocity, 1)), "π/4"),
@@ -226,7 +226,7 @@ class Builder:
         m = self.variable(stream.id, "mass_flow", STREAM["mass_flow"])
         dry = self.variable(stream.id, "dry_air_flow", STREAM["dry_air_flow"])
         w = self.state(stream, "humidity_ratio")
-        self._equation(
+        self.equation(
             f"moist flow of {stream.id}", Term(1.0, ((m, 1),)), Term(-1.0, ((dry, 1),)), Term(-1.0, ((dry, 1), (w, 1)))
         )
 
@@ -240,170 +240,13 @@ class Builder:
         m = self.flow(stream, "mass_flow")
         per_unit = fluid.molar_mass * (NORMAL_MOLAR_DENSITY if name == "normal_volume_flow" else 1.0)
         unit = "kg/m³ (normal)" if name == "normal_volume_flow" else "kg/mol"
-        self._equation(
+        self.equation(
             f"{name.replace('_', ' ')} of {stream.id}",
             Term(1.0, ((m, 1),)),
             Term(-per_unit, ((number, 1),), f"{per_unit:.9g} {unit}"),
         )
 
-    def _equation(self, name: str, *terms: Term) -> Polynomial:
+    def equation(self, name: str, *terms: Term) -> Polynomial:
         equation = Polynomial.of(name, terms)
         self.model.equations.append(equation)
         return equation
-
-    # -- balances ----------------------------------------------------------------------------------------------
-
-    def default_pressures(self) -> None:
-        """Where nobody mentions the pressure of a fluid that hardly feels it, take it as the site's."""
-        concerned = [s for s in self.case.streams if self._feels_no_pressure(s)]
-        for fluid in {self.built.fluids[s.id] for s in concerned}:
-            streams = [s for s in concerned if self.built.fluids[s.id] is fluid]
-            if fluid is None or any(_PRESSURE_SAYING & set(s.quantities) for s in streams):
-                continue
-            for stream in streams:
-                self.model.given[self.state(stream, "p")] = self.case.site.atmospheric_pressure
-            self.built.assumptions.append(
-                f"No pressure is given for {fluid.name}: atmospheric is taken; its properties hardly depend on it."
-            )
-
-    def _feels_no_pressure(self, stream: Stream) -> bool:
-        fluid = self.built.fluids[stream.id]
-        energetic = {stream.source, stream.target} - self.mass_only - {None}
-        return fluid is not None and fluid.pressure_optional and bool(energetic)
-
-    def mass_balances(self) -> None:
-        dropped = dependent_circuits(self.built.circuits)
-        for number, circuit in enumerate(self.built.circuits):
-            terms = [t for i in circuit.inflows for t in self._mass_terms(i, circuit, 1.0)]
-            terms += [t for i in circuit.outflows for t in self._mass_terms(i, circuit, -1.0)]
-            balance = Polynomial.of(circuit.name, terms)
-            self.built.mass_balances.append(balance)
-            if number in dropped or len(balance.variables) < len(circuit.inflows) + len(circuit.outflows):
-                self.model.implied.append(balance)
-            else:
-                self.model.equations.append(balance)
-
-    def _mass_terms(self, number: int, circuit: Circuit, sign: float) -> list[Term]:
-        stream = self.case.streams[number]
-        if circuit.component and self.is_humid(stream):
-            dry = self.carrier(stream)
-            if circuit.component == "dry air":
-                return [Term(sign, ((dry, 1),), "", "dry air", stream.id)]
-            return [Term(sign, ((dry, 1), (self.state(stream, "humidity_ratio"), 1)), "", "water vapour", stream.id)]
-        return [Term(sign, ((self.flow(stream, "mass_flow"), 1),), "", "mass flow", stream.id)]
-
-    def energy_balance(self, boundary: str) -> None:
-        crossing = [(end.stream, 1.0 if end.enters else -1.0) for end in self.ends[boundary]]
-        transfers = [(t, 1.0) for t in self.transfers_into.get(boundary, ())]
-        transfers += [(t, -1.0) for t in self.transfers_from.get(boundary, ())]
-        terms = [term for stream, sign in crossing for term in self._stream_energy(stream, sign, True)]
-        for transfer, sign in transfers:
-            rate = self.variable(transfer.id, "rate", TRANSFER["rate"])
-            terms.append(Term(sign, ((rate, 1),), "", transfer.kind.replace("_", " "), transfer.id))
-        name = f"energy balance of {boundary}"
-        whole = solved = Polynomial.of(name, terms)
-        mine = self.circuits_of[boundary]
-        passes = len(crossing) == 2 and all(len(c.inflows) == len(c.outflows) == 1 for c in mine if not c.component)
-        if passes and not transfers and not any(c.component for c in mine):
-            per_mass = [term for stream, sign in crossing for term in self._stream_energy(stream, sign, False)]
-            solved = Polynomial.of(f"{name} per unit mass", per_mass)
-        self.model.equations.append(solved)
-        self.built.energy_balances.append(EnergyBalance(boundary, whole, solved))
-
-    def _stream_energy(self, stream: Stream, sign: float, with_flow: bool) -> list[Term]:
-        """Flow enthalpy, kinetic and potential energy of a stream; without its flow, per unit mass."""
-        h = self.state(stream, "h")
-        if self.built.fluids[stream.id] is not None and not self.is_humid(stream):
-            self.state(stream, "p"), self.state(stream, "T")
-        carrying = ((self.carrier(stream), 1),) if with_flow else ()
-        moving = ((self.flow(stream, "mass_flow"), 1),) if with_flow else ()
-        terms = [Term(sign, (*carrying, (h, 1)), "", "flow enthalpy", stream.id)]
-        if f"{stream.id}.velocity" in self.model.index:
-            velocity = self.flow(stream, "velocity")
-            terms.append(Term(0.5 * sign, (*moving, (velocity, 2)), "½", "kinetic energy", stream.id))
-        if f"{stream.id}.elevation" in self.model.index:
-            z = self.flow(stream, "elevation")
-            symbol = f"{STANDARD_GRAVITY} m/s²"
-            terms.append(Term(STANDARD_GRAVITY * sign, (*moving, (z, 1)), symbol, "potential energy", stream.id))
-        return terms
-
-    def drop_dependent_energy_balance(self) -> None:
-        """Of boundaries that exchange energy only among themselves, one balance follows from the others."""
-        numbers = {e.boundary: i for i, e in enumerate(self.built.energy_balances)}
-        links, open_ends = [], set()
-        crossings = [(s.source, s.target) for s in self.case.streams]
-        crossings += [(t.source, t.target) for t in self.case.transfers]
-        for source, target in crossings:
-            ends = [numbers.get(b) if b is not None else None for b in (source, target)]
-            if ends[0] is not None and ends[1] is not None:
-                links.append((ends[0], ends[1]))
-            else:
-                open_ends |= {e for e in ends if e is not None}
-        for group in connected_groups(range(len(numbers)), links):
-            if len(group) > 1 and not open_ends & set(group):
-                balance = self.built.energy_balances[group[-1]].solved
-                self.model.equations.remove(balance)
-                self.model.implied.append(balance)
-
-    def transfer_law(self, transfer_id: str) -> None:
-        transfer = self.transfers[transfer_id]
-        for name in transfer.quantities:
-            self.variable(transfer_id, name, self._transfer_trait(transfer_id, name))
-        rate = self.variable(transfer_id, "rate", TRANSFER["rate"])
-        if transfer.has_law:
-            stream = self._facing_stream(transfer_id)
-            ua = self.variable(transfer_id, "UA", TRANSFER["UA"])
-            source = self.variable(transfer_id, "source_temperature", TRANSFER["source_temperature"])
-            inward = 1.0 if transfer.target is not None else -1.0
-            self._equation(
-                f"heat transfer law of {transfer_id}",
-                Term(1.0, ((rate, 1),)),
-                Term(-inward, ((ua, 1), (source, 1))),
-                Term(inward, ((ua, 1), (self.state(stream, "T"), 1))),
-            )
-        if transfer.kind == "fuel":
-            flow = "normal_volume_flow" if "normal_volume_flow" in transfer.quantities else "mass_flow"
-            if "heating_value" in transfer.quantities or flow in transfer.quantities:
-                amount = self.variable(transfer_id, flow, TRANSFER[flow])
-                value = self.variable(transfer_id, "heating_value", self._transfer_trait(transfer_id, "heating_value"))
-                self._equation(
-                    f"energy of {transfer_id}", Term(1.0, ((rate, 1),)), Term(-1.0, ((amount, 1), (value, 1)))
-                )
-
-    def _transfer_trait(self, transfer_id: str, name: str) -> Trait:
-        by_volume = "normal_volume_flow" in self.transfers[transfer_id].quantities
-        if name == "heating_value" and by_volume:
-            return Trait("volumetric_heating_value", 1e7, 0.0)
-        return TRANSFER[name]
-
-    def _facing_stream(self, transfer_id: str) -> Stream:
-        """The stream whose temperature drives a heat transfer law: the named one, else the only one leaving."""
-        transfer = self.transfers[transfer_id]
-        if transfer.law_stream is not None:
-            return self.streams[transfer.law_stream]
-        boundary = transfer.target if transfer.target is not None else transfer.source
-        leaving = [s for s in self.case.streams if s.source == boundary]
-        if len(leaving) == 1:
-            self.built.assumptions.append(
-                f"{transfer_id}: the temperature inside {boundary} is taken as that of {leaving[0].id} (well stirred)."
-            )
-            return leaving[0]
-        raise SchemaViolation(
-            f"{transfer_id}: which stream's temperature faces the source?", address=f"{transfer_id}.source_temperature",
-            hint="Name the stream as `of` inside the law.",
-        )  # fmt: skip
-
-    def give_starting_points(self) -> None:
-        """Temperatures and pressures start from the mean of what is given; flows from the largest given flow."""
-        by_suffix: dict[str, list[float]] = {}
-        for number, value in self.model.given.items():
-            by_suffix.setdefault(self.model.variables[number].name.rpartition(".")[2], []).append(float(value))
-        flows = [abs(v) for v in by_suffix.get("mass_flow", []) if v]
-        for variable in self.model.variables:
-            name = variable.name.rpartition(".")[2]
-            if name == "T" and by_suffix.get("T"):
-                variable.start = sum(by_suffix["T"]) / len(by_suffix["T"])
-            elif name == "p" and by_suffix.get("p"):
-                variable.start = math.exp(sum(math.log(max(p, 1.0)) for p in by_suffix["p"]) / len(by_suffix["p"]))
-            elif name in ("mass_flow", "dry_air_flow"):
-                variable.start = variable.scale = max(flows, default=1.0)
