@@ -17,14 +17,16 @@ _PRESSURE_SAYING = {"p", "x", "superheat", "subcooling"}
 def default_pressures(builder: Builder) -> None:
     """Where nobody mentions the pressure of a fluid that hardly feels it, take it as the site's."""
     concerned = [s for s in builder.case.streams if _feels_no_pressure(builder, s)]
-    for fluid in {builder.built.fluids[s.id] for s in concerned}:
-        streams = [s for s in concerned if builder.built.fluids[s.id] is fluid]
-        if fluid is None or any(_PRESSURE_SAYING & set(s.quantities) for s in streams):
+    by_fluid: dict[str, list[Stream]] = {}
+    for stream in concerned:
+        by_fluid.setdefault(builder.fluid(stream).name, []).append(stream)
+    for name, streams in by_fluid.items():
+        if any(_PRESSURE_SAYING & set(s.quantities) for s in streams):
             continue
         for stream in streams:
             builder.model.given[builder.state(stream, "p")] = builder.case.site.atmospheric_pressure
         builder.built.assumptions.append(
-            f"No pressure is given for {fluid.name}: atmospheric is taken; its properties hardly depend on it."
+            f"No pressure is given for {name}: atmospheric is taken; its properties hardly depend on it."
         )
 
 
@@ -35,16 +37,26 @@ def _feels_no_pressure(builder: Builder, stream: Stream) -> bool:
 
 
 def add_mass_balances(builder: Builder) -> None:
+    """One balance a circuit; those that follow from the others are only checked."""
     dropped = dependent_circuits(builder.built.circuits)
     for number, circuit in enumerate(builder.built.circuits):
         terms = [t for i in circuit.inflows for t in _mass_terms(builder, i, circuit, 1.0)]
         terms += [t for i in circuit.outflows for t in _mass_terms(builder, i, circuit, -1.0)]
         balance = Polynomial.of(circuit.name, terms)
         builder.built.mass_balances.append(balance)
-        if number in dropped or len(balance.variables) < len(circuit.inflows) + len(circuit.outflows):
+        uncancelled = _without_passing(terms)
+        if number in dropped or not uncancelled:
             builder.model.implied.append(balance)
         else:
-            builder.model.equations.append(balance)
+            builder.model.equations.append(Polynomial.of(circuit.name, uncancelled))
+
+
+def _without_passing(terms: list[Term]) -> list[Term]:
+    """The terms without those pairs in which one shared flow both enters and leaves."""
+    net: dict[tuple[tuple[int, int], ...], float] = {}
+    for term in terms:
+        net[term.factors] = net.get(term.factors, 0.0) + term.coefficient
+    return [t for t in terms if net[t.factors]]
 
 
 def _mass_terms(builder: Builder, number: int, circuit: Circuit, sign: float) -> list[Term]:
@@ -58,6 +70,7 @@ def _mass_terms(builder: Builder, number: int, circuit: Circuit, sign: float) ->
 
 
 def add_energy_balance(builder: Builder, boundary: str) -> None:
+    """Energy of one boundary: enthalpy, kinetic and potential energy of its streams, and its transfers."""
     crossing = [(end.stream, 1.0 if end.enters else -1.0) for end in builder.ends[boundary]]
     transfers = [(t, 1.0) for t in builder.transfers_into.get(boundary, ())]
     transfers += [(t, -1.0) for t in builder.transfers_from.get(boundary, ())]
@@ -114,6 +127,7 @@ def imply_dependent_energy_balance(builder: Builder) -> None:
 
 
 def add_transfer(builder: Builder, transfer_id: str) -> None:
+    """The quantities of a transfer, and the law that ties its rate where it has one."""
     transfer = builder.transfers[transfer_id]
     for name in transfer.quantities:
         builder.variable(transfer_id, name, _transfer_trait(builder, transfer_id, name))

@@ -156,13 +156,18 @@ class Builder:
             trait = Trait(trait.kind, trait.scale, lower, upper)
         return self.variable(item, name, trait)
 
+    def fluid(self, stream: Stream) -> Fluid:
+        """The property model of a stream. Raises SchemaViolation where none is known."""
+        fluid = self.built.fluids[stream.id]
+        if fluid is None:
+            text = f"Stream {stream.id} has a state but no fluid."
+            raise SchemaViolation(text, [Issue(text, stream.id, "Add `fluid`.", stream.pointer)])
+        return fluid
+
     def _node(self, stream: Stream) -> StateNode:
         number = self.built.state_nodes.get(stream.id)
         if number is None:
-            fluid = self.built.fluids[stream.id]
-            if fluid is None:
-                text = f"Stream {stream.id} has a state but no fluid."
-                raise SchemaViolation(text, [Issue(text, stream.id, "Add `fluid`.", stream.pointer)])
+            fluid = self.fluid(stream)
             number = self.built.state_nodes[stream.id] = len(self.model.nodes)
             self.model.nodes.append(StateNode(f"state of {stream.id}", stream.id, fluid))
         node = self.model.nodes[number]

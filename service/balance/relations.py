@@ -67,8 +67,7 @@ def _sum(builder: Builder, relation: Relation) -> None:
 def _ends(builder: Builder, relation: Relation) -> tuple[dict[str, int], dict[str, int], str]:
     """Variables p, T, h, s of the two streams of a machine, and whether the given pressures tell its direction."""
     start, end = (builder.streams[relation.streams[role]] for role in ("from", "to"))
-    a, b = builder.built.fluids[start.id], builder.built.fluids[end.id]
-    if a is not b or a is None:
+    if builder.fluid(start) is not builder.fluid(end):
         raise SchemaViolation(
             f"{relation.id} joins two streams of different fluids.", address=f"{relation.id}.value",
             hint="`from` and `to` must be the inlet and the outlet of one machine.",
@@ -88,8 +87,7 @@ def _isentropic(builder: Builder, relation: Relation) -> None:
     first, last, direction = _ends(builder, relation)
     eta = builder.variable(relation.id, "value", RELATION[relation.kind])
     start = builder.streams[relation.streams["from"]]
-    fluid = builder.built.fluids[start.id]
-    assert fluid is not None
+    fluid = builder.fluid(start)
     hs = builder.property_variable(relation.id, "h", fluid)
     members = {"p": last["p"], "s": first["s"], "h": hs}
     if fluid.kind == "humid_air":
@@ -298,8 +296,7 @@ def _effectiveness(builder: Builder, relation: Relation) -> None:
 def _limit_enthalpy(builder: Builder, relation: Relation, stream_role: str, temperature_role: str) -> int:
     """Enthalpy of a stream's fluid at its outlet pressure and the other stream's inlet temperature."""
     stream = builder.streams[relation.streams[stream_role]]
-    fluid = builder.built.fluids[stream.id]
-    assert fluid is not None
+    fluid = builder.fluid(stream)
     limit = builder.variable(relation.id, f"{stream_role}_limit_h", STATE["h"])
     other = builder.streams[relation.streams[temperature_role]]
     members = {"p": builder.state(stream, "p"), "T": builder.state(other, "T"), "h": limit}

@@ -108,8 +108,7 @@ def add_restriction(builder: Builder, relation: Relation) -> None:
         builder.variable(relation.id, name, RELATION[name])
         for name in (size_name, "discharge_coefficient", "downstream_pressure")
     )
-    fluid = builder.built.fluids[stream.id]
-    assert fluid is not None
+    fluid = builder.fluid(stream)
     by_bore = size_name == "bore"
 
     def flux(v: Values) -> Any:
