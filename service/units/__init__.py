@@ -2,7 +2,7 @@
 
 from .kinds import KINDS, SYSTEMS, System
 from .number import split_quantity
-from .spelling import MAX_LENGTH
+from .spelling import MAX_LENGTH, SPELLING_RULES
 from .table import Kind, Unit, UnitTable
 
-__all__ = ["KINDS", "MAX_LENGTH", "SYSTEMS", "Kind", "System", "Unit", "UnitTable", "split_quantity"]
+__all__ = ["KINDS", "MAX_LENGTH", "SPELLING_RULES", "SYSTEMS", "Kind", "System", "Unit", "UnitTable", "split_quantity"]

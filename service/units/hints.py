@@ -2,45 +2,51 @@
 
 from __future__ import annotations
 
-TRAPS: dict[str, str] = {
-    "C": "Write degC (K or delta_degC for a difference).",
-    "F": "Write degF (delta_degF for a difference).",
-    "R": "Write degR.",
-    "deg": "Write degC, degF, K or degR.",
-    "celsius": "Write degC.",
-    "fahrenheit": "Write degF.",
-    "ton": "Write t (1000 kg), short_ton (2000 lb) or long_ton (2240 lb).",
-    "tons": "Write t (1000 kg), short_ton (2000 lb) or long_ton (2240 lb).",
-    "ton/h": "Write t/h (1000 kg/h), short_ton/h or long_ton/h.",
-    "ton/hr": "Write t/h (1000 kg/h), short_ton/h or long_ton/h.",
-    "tons/h": "Write t/h (1000 kg/h), short_ton/h or long_ton/h.",
-    "tons/hr": "Write t/h (1000 kg/h), short_ton/h or long_ton/h.",
-    "a": "Write d, or h: the length of a year is not agreed.",
-    "year": "Write d, or h: the length of a year is not agreed.",
-    "cfm": "Write ft3/min (actual volume) or scfm (60 degF, 14.696 psi).",
-    "CFM": "Write ft3/min (actual volume) or scfm (60 degF, 14.696 psi).",
-    "cfh": "Write ft3/h (actual volume) or scfh (60 degF, 14.696 psi).",
-    "slpm": "Write NL/min (0 degC, 101.325 kPa), or L/min for the actual volume: slpm has several reference states.",
-    "cal": "Write kcal (4186.8 J, International Table) or J: there are several calories.",
-    "cal/g": "Write kcal/kg (4186.8 J/kg, International Table) or J/g: there are several calories.",
-    "therm": "Write MMBtu or MJ: the US therm and the EC therm differ.",
-    "MBtu": "Write kBtu (a thousand) or MMBtu (a million).",
-    "MBTU": "Write kBtu (a thousand) or MMBtu (a million).",
-    "MBtu/h": "Write kBtu/h (a thousand) or MMBtu/h (a million).",
-    "MBTU/h": "Write kBtu/h (a thousand) or MMBtu/h (a million).",
-    "MBH": "Write kBtu/h.",
-    "Mlb/h": "Write klb/h (a thousand pounds an hour).",
-    "Mscf": "Write scf or MMscf: M is read as a thousand by some and as a million by others.",
-    "Mscfd": "Write scfd or MMscfd: M is read as a thousand by some and as a million by others.",
-    "mcf": "Write scf or ft3.",
-    "bhp": "Write hp (550 ft lbf/s) or kW: bhp may be a brake or a boiler horsepower.",
-    "ppmv": "Write ppm.",
-    "kJ/kg*K": "Write kJ/kg/K or kJ/(kg*K).",
-    "kJ/kg/degF": "Write kJ/kg/K.",
-    "N*m": "Write J for energy; a torque is no quantity of a case.",
-    "Nm": "Write J for energy; a torque is no quantity of a case.",
-    "mW": "Write MW, kW or W: no plant is told in milliwatts.",
-}
+_TEMPERATURES = ("temperature", "temperature_difference")
+_GAS = ("volume_flow", "normal_volume_flow", "volume", "normal_volume", "volumetric_heating_value")
+_HEAT = ("energy", "power", "specific_energy", "specific_entropy", "entropy", "conductance", "volumetric_heating_value")
+
+TRAPS: tuple[tuple[tuple[str, ...], tuple[str, ...], str], ...] = (
+    (("C", "celsius", "Celsius", "deg"), _TEMPERATURES, "Write degC (K or delta_degC for a difference)."),
+    (("F", "fahrenheit", "Fahrenheit"), _TEMPERATURES, "Write degF (delta_degF for a difference)."),
+    (("R", "rankine", "Rankine"), _TEMPERATURES, "Write degR."),
+    (("ton", "tons", "T"), ("mass",), "Write t (1000 kg), short_ton (2000 lb) or long_ton (2240 lb)."),
+    (
+        ("ton/h", "tons/h", "ton/hr", "tons/hr", "T/h"),
+        ("mass_flow",),
+        "Write t/h (1000 kg/h), short_ton/h (2000 lb/h) or long_ton/h (2240 lb/h).",
+    ),
+    (("lbs", "lbs/h", "lbs/hr", "#/h", "#/hr"), ("mass", "mass_flow"), "Write lb, lb/h."),
+    (("Mlb/h", "Mlb/hr", "MPPH"), ("mass_flow",), "Write klb/h (a thousand pounds an hour)."),
+    (("a", "y", "yr", "year", "years", "month"), ("time",), "Write d or h: the length of a year is not agreed."),
+    (("cfm", "CFM"), _GAS, "Write ft3/min (actual volume) or scfm (60 degF, 14.696 psi)."),
+    (("cfh", "CFH"), _GAS, "Write ft3/h (actual volume) or scfh (60 degF, 14.696 psi)."),
+    (
+        ("slpm", "SLPM", "slm", "sccm"),
+        _GAS,
+        "Write NL/min (0 degC, 101.325 kPa), or L/min for the actual volume: slpm has several reference states.",
+    ),
+    (
+        ("Mscf", "MSCF", "Mscfd", "MSCFD", "mcf", "Mcf", "MCF", "Mcfd", "MCFD"),
+        _GAS,
+        "Write scf, MMscf, scfd or MMscfd: M is read as a thousand by some and as a million by others.",
+    ),
+    (("cal", "cal/g", "cal/h", "cal/s"), _HEAT, "Write kcal (4186.8 J) or J: there are several calories."),
+    (("therm", "therms", "thm", "therm/h"), _HEAT, "Write MMBtu or MJ: the US therm and the EC therm differ."),
+    (
+        ("MBtu", "MBTU", "mmBtu", "MBtu/h", "MBTU/h", "MBtu/hr", "MBTU/hr", "MBH"),
+        _HEAT,
+        "Write kBtu (a thousand) or MMBtu (a million).",
+    ),
+    (("bhp", "BHP"), ("power",), "Write hp (550 ft lbf/s) or kW: bhp may be a brake or a boiler horsepower."),
+    (("mW",), ("power",), "Write MW, kW or W: no plant is told in milliwatts."),
+    (("ton", "tons", "RT"), ("power",), "Write TR (refrigeration, 12000 Btu/h) or kW."),
+    (("N*m", "N·m", "N m", "Nm", "J/rev"), ("energy",), "Write J for energy; a torque is no quantity of a case."),
+    (("kJ/kg*K", "J/kg*K"), ("specific_entropy",), "Write kJ/kg/K or kJ/(kg*K)."),
+    (("ppmv", "ppmw", "mol%", "wt%", "vol%"), ("dimensionless",), "Write % or ppm."),
+    (("g",), ("acceleration",), "Write m/s2: 1 g is 9.80665 m/s2."),
+)
+"""(spellings, kinds for which the advice holds, what to write instead)."""
 
 PAIRS: dict[tuple[str, str], str] = {
     (

@@ -18,10 +18,11 @@ MAX_TEXT = 72
 """Longest quantity text: a number of 40 characters and a unit of 32."""
 
 _BLANKS = " \u00a0\u202f"
-# The unit begins with nothing that could still belong to a number, except that "-" alone means "no unit".
+# Possessive throughout: what has been read as part of the number is never given back to the unit ("1e5.5"). The unit
+# begins with nothing that could still be meant as part of the number, except that "-" alone means "no unit".
 _QUANTITY = re.compile(
-    rf"[{_BLANKS}]*(?:(\?)|([+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]+)?))"
-    rf"[{_BLANKS}]*(-|[^0-9.,_+\-?{_BLANKS}][^\n]*)?\Z"
+    rf"[{_BLANKS}]*+(?:(\?)|([+-]?+(?:[0-9]++(?:\.[0-9]*+)?+|\.[0-9]++)(?:[eE][+-]?+[0-9]++)?+))"
+    rf"[{_BLANKS}]*+(-|[^\d\s.,_+\-?'/][^\n]*+)?+[{_BLANKS}]*+\Z"
 )
 _SIGNIFICANT = re.compile(r"[1-9]")
 

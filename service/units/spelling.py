@@ -1,13 +1,8 @@
 """Regular variants of a symbol's spelling: one finite list per symbol, made when the table is built.
 
-A symbol such as `kJ/kg/K` or `Btu/h/ft2/degF` is also known
-    with powers as      m2 m^2 m²
-    with names as       h hr, d day, Btu BTU, lb lbm, L l, lbmol lb-mol, scf SCF,
-                        and below the line K degC °C C, degF °F F, degR °R R
-    with products as    Pa*s Pa·s Pa.s Pa-s "Pa s"
-    with divisors as    kJ/(kg K) kJ/(kg*K) kJ/(kg·K) kJ/kg·K kJ/kg.K kJ/kg-K "kJ/kg K" kJ/kgK, "kJ kg-1 K-1"
-What follows one solidus is read as standing below it. The other reading (kJ K/kg) is the unit of no kind of quantity
-here, so that nothing can be mistaken; only `kJ/kg*K` is left out, because every programming language reads it that way.
+The rules are told in SPELLING_RULES. What follows one solidus is read as standing below it. The other reading of
+`kJ/kg K` (kJ times K over kg) is the unit of no kind of quantity here, so that nothing can be mistaken; only
+`kJ/kg*K` is left out, because every programming language reads it that way.
 """
 
 from __future__ import annotations
@@ -18,6 +13,17 @@ from itertools import product
 
 MAX_LENGTH = 32
 """Longest unit text that is looked at at all."""
+
+SPELLING_RULES: tuple[str, ...] = (
+    "Powers: `m3/h` is also `m^3/h` and `m³/h`.",
+    "Products: `Pa*s` is also `Pa·s`, `Pa.s`, `Pa s` and `Pa-s`.",
+    "Several divisors: `kJ/kg/K` is also `kJ/(kg K)`, `kJ/(kg·K)`, `kJ/(kg*K)`, `kJ/kg K`, `kJ/kg·K`, `kJ/kg.K`, "
+    "`kJ/kg-K`, `kJ/kgK`, `kJ kg-1 K-1` and `kJ kg⁻¹ K⁻¹`.",
+    "Degrees below the line are differences: `W/m2/K` is also `W/m2/degC`, `W/m²/°C` and `W/(m2 C)`; "
+    "the same holds for degF, °F, F and degR, °R, R.",
+    "Names: `Btu/h/ft2/degF` is also `BTU/hr/ft2/degF`; likewise lbm for lb, lb-mol for lbmol, day for d, l for L.",
+)
+"""What a client may write instead of a symbol, in words; in each rule the first quoted text is the symbol."""
 
 _ANYWHERE: dict[str, tuple[str, ...]] = {
     "h": ("h", "hr"),

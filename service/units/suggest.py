@@ -18,7 +18,7 @@ def nearby(text: str, symbols: Sequence[str], same_but_for_case: Sequence[str], 
     matcher: SequenceMatcher[str] = SequenceMatcher(autojunk=False)
     matcher.set_seq2(text)
     scored: list[tuple[float, str]] = []
-    for symbol in symbols:
+    for symbol in symbols if len(text) > 1 else ():  # one letter is near to everything
         matcher.set_seq1(symbol)
         if matcher.real_quick_ratio() >= _CUTOFF and matcher.quick_ratio() >= _CUTOFF:
             ratio = matcher.ratio()

@@ -181,8 +181,9 @@ class UnitTable:
             advice = [PAIRS.get((row.name, given[0]), ""), would_do]
             return UnitOfWrongKind(detail, address=address, hint=" ".join(filter(None, advice)))
         detail = f"{shown(text)} is not a unit that is known here; {row.article} {row.title} is expected."
+        trap = next((advice for texts, kinds, advice in TRAPS if text in texts and row.name in kinds), "")
         near = nearby(text, self.kinds[row.name].symbols, self._folded.get(text.casefold(), ()), self._units[row.name])
-        advice = [TRAPS.get(text, ""), f"Did you mean {' or '.join(near)}?" if near else would_do]
+        advice = [trap, f"Did you mean {' or '.join(near)}?" if near else would_do]
         return UnitNotUnderstood(detail, address=address, hint=" ".join(filter(None, advice)))
 
 
