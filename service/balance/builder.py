@@ -21,7 +21,7 @@ from service.fluids.protocol import Fluid
 NORMAL_MOLAR_DENSITY = 101_325.0 / (8.314462618 * 273.15)
 """[mol/m3] ideal gas at 0 degC and 101.325 kPa; R by CODATA 2018."""
 
-_FLOWS = ("mass_flow", "molar_flow", "volume_flow", "normal_volume_flow")
+_FLOWS = ("mass_flow", "dry_air_flow", "molar_flow", "volume_flow", "normal_volume_flow")
 _PRESSURE_SAYING = {"p", "x", "superheat", "subcooling"}
 
 
@@ -87,7 +87,7 @@ class Builder:
 
         group = {s.id: {s.id} for s in self.case.streams}
         for circuit in self.built.circuits:
-            if len(circuit.inflows) == len(circuit.outflows) == 1 and not circuit.component:
+            if len(circuit.inflows) == len(circuit.outflows) == 1 and circuit.component != "water":
                 a, b = (self.case.streams[n].id for n in (circuit.inflows[0], circuit.outflows[0]))
                 if group[a] is not group[b] and metered(group[a]) + metered(group[b]) <= 1:
                     joined = group[a] | group[b]
@@ -194,12 +194,12 @@ class Builder:
         """The variable of a flow quantity of a stream, with the equation that ties it to the mass flow."""
         if f"{stream.id}.{name}" in self.model.index:
             return self.model.index[f"{stream.id}.{name}"]
-        if name == "mass_flow" and self._flow_of[stream.id] != stream.id:
-            return self._shared_flow(stream)
+        if self.is_humid(stream) and name in ("mass_flow", "dry_air_flow"):
+            return self._moist_flows(stream)[name]
+        if name == "mass_flow":
+            return self._carrier_variable(stream, name)
         number = self.variable(stream.id, name, STREAM[name])
-        if name in ("mass_flow", "dry_air_flow") and self.is_humid(stream):
-            self._tie_moist_flow(stream)
-        elif name in ("molar_flow", "normal_volume_flow"):
+        if name in ("molar_flow", "normal_volume_flow"):
             self._tie_amount(stream, name, number)
         elif name == "volume_flow":
             m, rho = self.flow(stream, "mass_flow"), self.state(stream, "rho")
@@ -218,22 +218,26 @@ class Builder:
             )  # fmt: skip
         return number
 
-    def _shared_flow(self, stream: Stream) -> int:
-        """The variable of the flow that this stream shares, made known under this stream's address too."""
-        number = self.flow(self.streams[self._flow_of[stream.id]], "mass_flow")
-        address = f"{stream.id}.mass_flow"
+    def _carrier_variable(self, stream: Stream, name: str) -> int:
+        """The stream's own flow variable, or the one it shares, made known under this stream's address too."""
+        owner = self._flow_of[stream.id]
+        if owner == stream.id:
+            return self.variable(stream.id, name, STREAM[name])
+        number = self.flow(self.streams[owner], name)
+        address = f"{stream.id}.{name}"
         self.model.index[address] = number
         if address in self.quantities:
             self._apply(number, self.quantities[address])
         return number
 
-    def _tie_moist_flow(self, stream: Stream) -> None:
-        m = self.variable(stream.id, "mass_flow", STREAM["mass_flow"])
-        dry = self.variable(stream.id, "dry_air_flow", STREAM["dry_air_flow"])
+    def _moist_flows(self, stream: Stream) -> dict[str, int]:
+        """Total and dry-air flow of a humid stream, tied by its humidity ratio."""
+        dry = self._carrier_variable(stream, "dry_air_flow")
+        total = self.variable(stream.id, "mass_flow", STREAM["mass_flow"])
         w = self.state(stream, "humidity_ratio")
-        self.equation(
-            f"moist flow of {stream.id}", Term(1.0, ((m, 1),)), Term(-1.0, ((dry, 1),)), Term(-1.0, ((dry, 1), (w, 1)))
-        )
+        terms = (Term(1.0, ((total, 1),)), Term(-1.0, ((dry, 1),)), Term(-1.0, ((dry, 1), (w, 1))))
+        self.equation(f"moist flow of {stream.id}", *terms)
+        return {"mass_flow": total, "dry_air_flow": dry}
 
     def _tie_amount(self, stream: Stream, name: str, number: int) -> None:
         fluid = self.built.fluids[stream.id]
