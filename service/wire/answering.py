@@ -7,6 +7,7 @@ most of their members are renderings and conversions that need the presenter.
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Sequence
 from statistics import NormalDist
 from typing import Any
@@ -17,6 +18,8 @@ from service.balance.solution import EntropyCheck, LedgerAccount, LedgerLine, So
 from service.wire.presenting import Presenter, Shown, rounded
 from service.wire.provenance import provenance
 from service.wire.vocabulary import DERIVED_STATE, STATE, STREAM
+
+_DOUBLED = re.compile(r"\(\(([^()]*)\)\)")
 
 DEFERENCE = (
     "This is a screening calculation on the numbers given. It does not replace local codes, the maker's instructions "
@@ -135,7 +138,7 @@ class Answer:
     def _line(self, line: LedgerLine, kind: str, flipped: bool) -> dict[str, Any]:
         out: dict[str, Any] = {"term": line.term, "of": line.of}
         if self.full:
-            formula, numbers = line.formula(self.symbols), line.formula(self.numbers)
+            formula, numbers = line.formula(self.symbols), plain(line.formula(self.numbers))
             out["formula"] = _opposite(formula) if flipped else formula
             out["numbers"] = _opposite(numbers) if flipped else numbers
         out |= self.presenter.quantity(-line.value if flipped else line.value, kind)
@@ -154,12 +157,17 @@ class Answer:
             values[address] = quantity(
                 solution.values[variable], solution.kinds[variable], self.asked.get(address), reason
             )
+        equation, numbers = step.formula(self.symbols), plain(step.formula(self.numbers))
+        if step.method == "rearranged":
+            (variable,) = step.solved_for
+            equation = f"{self.symbols(variable)} = {equation}"
+            numbers = f"{numbers} = {self.numbers(variable)}"
         out: dict[str, Any] = {
             "number": number,
             "name": step.name,
             "method": step.method,
-            "equation": step.formula(self.symbols),
-            "numbers": step.formula(self.numbers),
+            "equation": equation,
+            "numbers": numbers,
             "solved_for": list(values),
             "values": values,
             "residual": rounded(step.residual, 3),
@@ -215,8 +223,13 @@ def _second_law(checks: Sequence[EntropyCheck]) -> str:
     return "satisfied" if verdicts == {"satisfied"} else "not_checked"
 
 
+def plain(formula: str) -> str:
+    """The formula without doubled brackets around a single number: ((3 m/s))² is (3 m/s)²."""
+    return _DOUBLED.sub(r"(\1)", formula) if "((" in formula else formula
+
+
 def _opposite(formula: str) -> str:
     """The formula with its sign changed."""
     if formula.startswith("−") and " + " not in formula and " − " not in formula:
         return formula[1:]
-    return f"−({formula})" if " " in formula else f"−{formula}"
+    return f"−({formula})" if " + " in formula or " − " in formula else f"−{formula}"

@@ -5,7 +5,6 @@ from __future__ import annotations
 from typing import Any
 
 from service.fluids.catalogue import FluidCatalogue
-
 from service.units import UnitTable
 from service.wire.presenting import Presenter
 from service.wire.stating import limits_of, source_of

@@ -3,16 +3,16 @@
 from __future__ import annotations
 
 import time
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from typing import Any, TypeVar
 
 import numpy as np
-from service.fluids.catalogue import FluidCatalogue
 
 from service import solvers
 from service.balance.case import Case
-from service.balance.solution import Solution
+from service.balance.solution import SeriesResult, Solution
 from service.errors import CaseError, Issue, NotFound, SchemaViolation
+from service.fluids.catalogue import FluidCatalogue
 from service.units import UnitTable
 from service.wire import series as columns
 from service.wire.addresses import AddressBook
@@ -26,7 +26,7 @@ from service.wire.presenting import Presenter
 from service.wire.provenance import provenance
 from service.wire.shapes import Shape, report
 from service.wire.stating import answer_state
-from service.wire.suggest import did_you_mean, quoted
+from service.wire.suggest import did_you_mean, listed, quoted
 from service.wire.telling import told
 
 Document = dict[str, Any]
@@ -86,7 +86,6 @@ class Operations:
             "undetermined": list(found.undetermined),
             "surplus": list(found.surplus),
             "assumptions": list(found.assumptions),
-            "advisories": {"items": [], "deference": DEFERENCE},
             "provenance": provenance((), document),
         }
 
@@ -109,60 +108,74 @@ class Operations:
 
     def series(self, document: Any) -> Document:
         """The case over JSON columns. Raises CaseError where the request as a whole cannot be served."""
-        case, readings, asked = self._series_request(document)
-        presenter = Presenter(self.unit_table, case.answer.units, case.site.atmospheric_pressure)
-        book, findings = AddressBook(document["case"]), Findings()
-        plans, values = [], {}
-        for address, stated in readings.items():
-            place = pointer(("readings", address))
-            plan = columns.column_plan(address, stated.get("unit"), book, self.unit_table, findings, place)
-            if plan is not None:
-                plans.append(plan)
-                values[address] = _numbers(stated["values"], f"{place}/values", findings)
-        reported = columns.reported_addresses(asked, case, readings, book, findings)
+        self._check_series(document)
+        readings, findings = document["readings"], Findings()
+        headers = {address: stated.get("unit") for address, stated in readings.items()}
+        run = self.series_run(document["case"], headers, document.get("report"), self._deadline())
+        values = {
+            address: _numbers(stated["values"], f"{pointer(('readings', address))}/values", findings)
+            for address, stated in readings.items()
+        }
         findings.raise_any()
-        si, impossible = columns.columns_to_si(plans, values, self.unit_table, case.site.atmospheric_pressure)
-        kinds = {plan.address: plan.kind for plan in plans}
-        full = columns.with_columns(case, {a: (kinds[a], c) for a, c in si.items()}, reported)
-        names = [address for address, _ in reported]
-        result = self._tell(
-            document["case"], presenter, lambda: solvers.series(full, self.catalogue, si, names, self._deadline())
-        )
-        writer = columns.SeriesWriter(case, reported, presenter)
-        status = columns.statuses(result, impossible)
+        answer = run.run(values)
         return {
-            "rows": result.rows,
+            "rows": answer.rows,
             "columns": {
-                name: {
-                    "unit": writer.units[name].symbol,
-                    "values": columns.numbers(writer.column(name, np.asarray(result.columns[name]))),
-                }
-                for name in names
+                name: {"unit": answer.units[name].symbol, "values": columns.numbers(column)}
+                for name, column in answer.columns.items()
             },
-            "status": status,
-            "unsolved": columns.details(result, impossible, status),
+            "status": list(answer.status),
+            "unsolved": list(answer.unsolved),
             "deference": DEFERENCE,
             "provenance": provenance((), document),
         }
 
-    def _series_request(self, document: Any) -> tuple[Case, Mapping[str, Any], list[str] | None]:
-        findings = Findings()
-        faults = self._series_shape.faults(document)
-        if faults:
-            report(faults, findings)
-            findings.raise_any()
+    def series_run(
+        self,
+        case_document: Any,
+        headers: Mapping[str, str | None],
+        asked: Sequence[str] | None = None,
+        deadline: float | None = None,
+    ) -> columns.SeriesRun:
+        """A case made ready for columns. headers: address → unit of its column; asked: addresses to report.
+
+        Raises CaseError, with pointers into a series request.
+        """
         try:
-            case = parse_case(document["case"], self._case_shape, self.unit_table)
+            case, presenter = self._parse(case_document)
         except CaseError as error:
             raise _inside_case(error) from error
-        readings = document["readings"]
-        lengths = {len(stated["values"]) for stated in readings.values()}
+        book, findings = AddressBook(case_document), Findings()
+        plans = []
+        for address, symbol in headers.items():
+            place = pointer(("readings", address))
+            plan = columns.column_plan(address, symbol, book, self.unit_table, findings, place)
+            if plan is not None:
+                plans.append(plan)
+        reported = columns.reported_addresses(asked, case, headers, book, findings)
+        findings.raise_any()
+
+        def solve(full: Case, si: Mapping[str, columns.Column], names: Sequence[str]) -> SeriesResult:
+            try:
+                return solvers.series(full, self.catalogue, si, names, deadline)
+            except CaseError as error:
+                raise _inside_case(told(error, book, presenter)) from error
+
+        return columns.SeriesRun(case, plans, reported, presenter, solve)
+
+    def _check_series(self, document: Any) -> None:
+        findings = Findings()
+        report(self._series_shape.faults(document), findings)
+        findings.raise_any()
+        lengths = {len(stated["values"]) for stated in document["readings"].values()}
         if len(lengths) > 1:
-            detail = f"The columns have different lengths: {', '.join(map(str, sorted(lengths)[:5]))}."
-            raise SchemaViolation(
-                detail, [Issue(detail, hint="Give every column a value or null in each row.", pointer="#/readings")]
+            findings.add(
+                SchemaViolation,
+                f"The columns have different lengths: {listed([str(n) for n in sorted(lengths)], most=5)}.",
+                pointer="#/readings",
+                hint="Give every column a value or null in each row.",
             )
-        return case, readings, document.get("report")
+        findings.raise_any()
 
     # -- states, fluids, units ---------------------------------------------------------------------------------
 

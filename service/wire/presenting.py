@@ -74,7 +74,7 @@ class Presenter:
             return "not a number"
         unit = self.units.display(kind, self.system)
         zero, factor = self.zero_and_factor(unit)
-        return f"{rounded((value - zero) / factor, 7):.7g} {unit.symbol}".strip(" -")
+        return f"{rounded((value - zero) / factor, 7):.7g} {unit.symbol}".removesuffix(" -")
 
     def in_formula(self, value: float, kind: str) -> str:
         """`(3.333333 kg/s)`: a number with a unit that multiplies out with the others of its system."""

@@ -51,7 +51,7 @@ class QuantityReader:
             number, symbol, unknown = split_quantity(text)
             unit = self.units.unit(symbol, kind) if symbol else None
         except CaseError as error:
-            self.findings.adopt(error, pointer=pointer, address=address)
+            self.findings.adopt(self._about_the_unit(text, kind) or error, pointer=pointer, address=address)
             return None
         if unknown:
             return Quantity(address, kind, wanted=True, unit=unit.symbol if unit else None, pointer=pointer)
@@ -63,6 +63,17 @@ class QuantityReader:
         if value is None:
             return None
         return Quantity(address, kind, value, unit=unit.symbol if unit else None, pointer=pointer)
+
+    def _about_the_unit(self, text: str, kind: str) -> CaseError | None:
+        """The table's refusal of a unit that begins with a digit, as 9**9**9 does; None where it is no such text."""
+        number, _, symbol = text.strip().partition(" ")
+        if "*" not in symbol or not number[-1:].isdigit():
+            return None
+        try:
+            self.units.unit(symbol.strip(), kind)
+        except CaseError as error:
+            return error
+        return None
 
     def _bare(self, raw: float, kind: str, address: str, pointer: str) -> Quantity | None:
         if not self.units.kinds[kind].bare_number_allowed:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import dataclasses
 import math
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from typing import Any
 
 import numpy as np
@@ -12,7 +12,7 @@ import numpy.typing as npt
 
 from service.balance.case import Case, Quantity, Relation, Stream, Transfer
 from service.balance.solution import SeriesResult
-from service.errors import CaseError, SchemaViolation, StateOutOfRange, UnitNotUnderstood
+from service.errors import CaseError, SchemaViolation, StateOutOfRange, UnderSpecified, UnitNotUnderstood
 from service.units import Unit, UnitTable
 from service.wire.addresses import AddressBook
 from service.wire.findings import Findings
@@ -132,36 +132,78 @@ def reported_addresses(
     return found
 
 
-class SeriesWriter:
-    """Turns results into columns in the units of the answer."""
+@dataclasses.dataclass(frozen=True, slots=True)
+class SeriesAnswer:
+    """columns: address → values in the unit told by `units`; status: one word a row; unsolved: the first bad rows."""
 
-    def __init__(self, case: Case, reported: Sequence[tuple[str, str]], presenter: Presenter) -> None:
-        asked = {q.address: q.unit for q in case.quantities() if q.unit and (q.wanted or q.value is not None)}
-        self.units = {address: presenter.unit(kind, asked.get(address)) for address, kind in reported}
+    rows: int
+    units: Mapping[str, Unit]
+    columns: Mapping[str, Column]
+    status: Sequence[str]
+    unsolved: Sequence[Mapping[str, Any]]
+
+
+Solve = Callable[[Case, Mapping[str, Column], Sequence[str]], SeriesResult]
+
+
+class SeriesRun:
+    """One case made ready for columns; `run` may be called again and again, with as many rows as memory allows."""
+
+    def __init__(
+        self,
+        case: Case,
+        plans: Sequence[ColumnPlan],
+        reported: Sequence[tuple[str, str]],
+        presenter: Presenter,
+        solve: Solve,
+    ) -> None:
+        self.case = case
+        self.plans = plans
+        self.reported = reported
         self.presenter = presenter
+        self.solve = solve
+        asked = {q.address: q.unit for q in case.quantities() if q.unit}
+        read = {plan.address: plan.unit.symbol for plan in plans if plan.unit is not None}
+        self.units = {a: presenter.unit(kind, read.get(a) or asked.get(a)) for a, kind in reported}
 
-    def column(self, address: str, values: Column) -> Column:
-        """SI values in the column's unit."""
-        unit = self.units[address]
-        return self.presenter.units.from_si(values, unit, self.presenter.atmospheric_pressure)
+    def run(self, values: Mapping[str, Column]) -> SeriesAnswer:
+        """The answer for columns in the units of their plans; NaN where there is no reading."""
+        refused = _missing(values)
+        pressure, table = self.case.site.atmospheric_pressure, self.presenter.units
+        si, impossible = columns_to_si(self.plans, values, table, pressure)
+        for row, why in impossible.items():
+            refused.setdefault(row, (StateOutOfRange.problem_type, why))
+        kinds = {plan.address: plan.kind for plan in self.plans}
+        full = with_columns(self.case, {a: (kinds[a], c) for a, c in si.items()}, self.reported)
+        result = self.solve(full, si, [address for address, _ in self.reported])
+        status = [SOLVED] * result.rows
+        for row, problem_type in result.problems.items():
+            status[row] = problem_type or SOLVED
+        for row, (problem_type, _) in refused.items():
+            status[row] = problem_type
+        columns = {
+            address: table.from_si(np.asarray(result.columns[address]), unit, pressure)
+            for address, unit in self.units.items()
+        }
+        return SeriesAnswer(result.rows, self.units, columns, status, _unsolved(result, refused, status))
 
 
-def statuses(result: SeriesResult, impossible: Mapping[int, str]) -> list[str]:
-    """One word a row: `solved`, or the problem type."""
-    out = [SOLVED] * result.rows
-    for row, problem_type in result.problems.items():
-        out[row] = problem_type or SOLVED
-    for row in impossible:
-        out[row] = StateOutOfRange.problem_type
-    return out
+def _missing(values: Mapping[str, Column]) -> dict[int, tuple[str, str]]:
+    """Rows in which a reading is missing."""
+    found: dict[int, tuple[str, str]] = {}
+    for address, column in values.items():
+        for row in np.flatnonzero(np.isnan(column)):
+            found.setdefault(int(row), (UnderSpecified.problem_type, f"{address} has no reading in this row."))
+    return found
 
 
-def details(result: SeriesResult, impossible: Mapping[int, str], status: Sequence[str]) -> list[dict[str, Any]]:
-    """The first rows without an answer, with what to say of them."""
+def _unsolved(
+    result: SeriesResult, refused: Mapping[int, tuple[str, str]], status: Sequence[str]
+) -> list[dict[str, Any]]:
     out = []
-    for row in sorted({*result.problems, *impossible}):
+    for row in sorted({*result.problems, *refused}):
         if status[row] != SOLVED:
-            detail = impossible.get(row) or result.details.get(row, "")
+            detail = refused[row][1] if row in refused else result.details.get(row, "")
             out.append({"row": row, "status": status[row], "detail": detail})
         if len(out) >= MOST_DETAILS:
             break

@@ -6,12 +6,11 @@ import math
 from collections.abc import Mapping
 from typing import Any
 
-from service.fluids.catalogue import FluidCatalogue
-
 from service.balance.case import Fluid as DeclaredFluid
 from service.balance.case import Quantity
 from service.balance.solution import FluidSource
 from service.errors import CaseError, Contradictory, Issue, SchemaViolation, UnderSpecified
+from service.fluids.catalogue import FluidCatalogue
 from service.fluids.protocol import Fluid, FluidSpec, Limits, State
 from service.units import UnitTable
 from service.wire.building import CaseBuilder
