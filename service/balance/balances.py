@@ -183,12 +183,15 @@ def give_starting_points(builder: Builder) -> None:
     by_suffix: dict[str, list[float]] = {}
     for number, value in builder.model.given.items():
         by_suffix.setdefault(builder.model.variables[number].name.rpartition(".")[2], []).append(float(value))
-    flows = [abs(v) for v in by_suffix.get("mass_flow", []) if v]
+    starts: dict[str, float] = {}
+    if temperatures := by_suffix.get("T"):
+        starts["T"] = sum(temperatures) / len(temperatures)
+    if pressures := by_suffix.get("p"):
+        starts["p"] = math.exp(sum(math.log(max(p, 1.0)) for p in pressures) / len(pressures))
+    flow = max((abs(v) for v in by_suffix.get("mass_flow", ()) if v), default=1.0)
     for variable in builder.model.variables:
         name = variable.name.rpartition(".")[2]
-        if name == "T" and by_suffix.get("T"):
-            variable.start = sum(by_suffix["T"]) / len(by_suffix["T"])
-        elif name == "p" and by_suffix.get("p"):
-            variable.start = math.exp(sum(math.log(max(p, 1.0)) for p in by_suffix["p"]) / len(by_suffix["p"]))
-        elif name in ("mass_flow", "dry_air_flow"):
-            variable.start = variable.scale = max(flows, default=1.0)
+        if name in ("mass_flow", "dry_air_flow"):
+            variable.start = variable.scale = flow
+        else:
+            variable.start = starts.get(name)

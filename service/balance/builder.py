@@ -81,19 +81,23 @@ class Builder:
         Where both ends have a value of their own, they stay apart and the mass balance compares them.
         """
         given = {a for a, q in self.quantities.items() if q.value is not None} | set(also_given)
+        order = {s.id: i for i, s in enumerate(self.case.streams)}
+        metered = {s: any(f"{s}.{name}" in given for name in _FLOWS) for s in order}
+        owner = {s: s for s in order}
 
-        def metered(streams: Collection[str]) -> int:
-            return sum(f"{s}.{name}" in given for s in streams for name in _FLOWS)
+        def find(s: str) -> str:
+            while owner[s] != s:
+                owner[s] = owner[owner[s]]
+                s = owner[s]
+            return s
 
-        group = {s.id: {s.id} for s in self.case.streams}
         for circuit in self.built.circuits:
             if len(circuit.inflows) == len(circuit.outflows) == 1 and circuit.component != "water":
-                a, b = (self.case.streams[n].id for n in (circuit.inflows[0], circuit.outflows[0]))
-                if group[a] is not group[b] and metered(group[a]) + metered(group[b]) <= 1:
-                    joined = group[a] | group[b]
-                    group.update(dict.fromkeys(joined, joined))
-        order = [s.id for s in self.case.streams]
-        return {s: min(group[s], key=lambda m: (metered((m,)) == 0, order.index(m))) for s in order}
+                a, b = (find(self.case.streams[n].id) for n in (circuit.inflows[0], circuit.outflows[0]))
+                if a != b and not (metered[a] and metered[b]):
+                    first, second = sorted((a, b), key=lambda s: (not metered[s], order[s]))
+                    owner[second] = first
+        return {s: find(s) for s in order}
 
     def variable(self, item: str, name: str, trait: Trait) -> int:
         """The variable of `item.name`, made with its trait, its bounds and its given value when it is new."""
