@@ -22,21 +22,27 @@ def newton_in_bracket(
     high: float,
     start: float,
     scale: float,
-    settled: float = 1e-9,
+    exact: bool = True,
 ) -> float:
     """x in [low, high] where a rising residual is zero.
 
     step(x) returns (residual, its slope); scale is the size of the residual below which it counts as zero relative to
-    RELATIVE. settled: relative step after which the next error is below rounding; 1e-9 for an exact slope (the steps
-    square), 1e-13 for a slope that is only about right. Raises NotConverged after 60 calls.
+    RELATIVE. exact: the slope is the derivative; where it is only about right (False), it serves for the first step and
+    secants follow. Raises NotConverged after 60 calls.
     """
     x = min(max(start, low), high)
+    settled = 1e-9 if exact else 1e-12  # Newton's next error is the square of the step, a secant's nearly so
+    before: tuple[float, float] | None = None
     for _ in range(60):
         residual, slope = step(x)
         if residual > 0.0:
             high = x
         else:
             low = x
+        if not exact and before is not None and before[0] != x:
+            secant = (residual - before[1]) / (x - before[0])
+            slope = secant if secant > 0.0 else slope
+        before = x, residual
         move = -residual / slope if slope > 0.0 else math.nan
         new = x + move
         if not low <= new <= high:

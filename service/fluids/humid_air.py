@@ -178,7 +178,7 @@ class HumidAir(BasePointFluid):
             return w
         highest = min(air.saturated(p, T), air.HIGHEST_W)
         if name in ("h", "s", "rho"):
-            found = root_in_bracket(lambda w: self._one(name, p, T, w) - value, 0.0, highest)
+            found = self._humidity_where(p, T, name, value, highest)
             if found is None:
                 ends = sorted(self._one(name, p, T, w) for w in (0.0, highest))
                 raise StateOutOfRange(
@@ -187,6 +187,19 @@ class HumidAir(BasePointFluid):
                 )
             return found
         raise self.unsupported(inputs)
+
+    def _humidity_where(self, p: float, T: float, name: str, value: float, highest: float) -> float | None:
+        if name != "h":
+            return root_in_bracket(lambda w: self._one(name, p, T, w) - value, 0.0, highest)
+        slope = 2.5e6 + 1860.0 * (T - 273.15)  # [J/kg] of water vapour: h is all but linear in W
+
+        def residual(w: float) -> tuple[float, float]:
+            return air.enthalpy(p, T, w) - value, slope
+
+        at_dry, at_highest = residual(0.0)[0], residual(highest)[0]
+        if at_dry > 0.0 or at_highest < 0.0:
+            return None
+        return newton_in_bracket(residual, 0.0, highest, -at_dry / slope, scale=at_highest - at_dry, exact=False)
 
     @staticmethod
     def _one(name: str, p: float, T: float, w: float) -> float:
@@ -241,7 +254,7 @@ class HumidAir(BasePointFluid):
                 else "",
             )
         start = low - at_low / residual(low)[1]
-        return newton_in_bracket(residual, low, high, start, scale=at_high - at_low, settled=1e-13)
+        return newton_in_bracket(residual, low, high, start, scale=at_high - at_low, exact=False)
 
     @staticmethod
     def _wet_bulb_excess(p: float, T: float, w: float, b: float) -> float:

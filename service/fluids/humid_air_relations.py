@@ -195,7 +195,7 @@ def dew_point(p: float, W: float, T_min: float) -> float:
         # Clausius-Clapeyron, with the mole fraction's share of ln W
         return math.log(Ws) - log_W, (1.0 + Ws / RATIO) * (6_150.0 if T < T_TRIPLE else 5_300.0) / (T * T)
 
-    return newton_in_bracket(residual, T_min, high, start, scale=1.0, settled=1e-13)
+    return newton_in_bracket(residual, T_min, high, start, scale=1.0, exact=False)
 
 
 def wet_bulb(p: float, T: float, W: float) -> float:
@@ -221,7 +221,7 @@ def wet_bulb(p: float, T: float, W: float) -> float:
         if residual(high)[0] < 0.0:
             return math.nan
         start = high - min(0.5 * (high - T_TRIPLE), 20.0)
-        return newton_in_bracket(residual, T_TRIPLE, high, start, scale=1e5, settled=1e-13)
+        return newton_in_bracket(residual, T_TRIPLE, high, start, scale=1e5, exact=False)
     try:
         ice_bulb = library("B", T, p, "W", W)
     except StateOutOfRange:
@@ -237,8 +237,7 @@ def humidity_of_wet_bulb(p: float, T: float, B: float) -> float:
     if B >= T:
         return Ws
     if B < T_TRIPLE:
-        highest = min(saturated(p, T), HIGHEST_W)
-        found = root_in_bracket(lambda W: wet_bulb(p, T, W) - B, 0.0, highest)
+        found = root_in_bracket(lambda W: wet_bulb(p, T, W) - B, 0.0, Ws)  # at Ws the wet bulb is above B, as T is
         return -1.0 if found is None else found
     h_water, h_saturated = liquid_water(p, B), enthalpy(p, B, Ws)
     slope = enthalpy(p, T, 1e-3) * 1e3 - enthalpy(p, T, 0.0) * 1e3 - h_water
@@ -248,4 +247,4 @@ def humidity_of_wet_bulb(p: float, T: float, B: float) -> float:
 
     if residual(0.0)[0] > 0.0:
         return -1.0
-    return newton_in_bracket(residual, 0.0, Ws, 0.5 * Ws, scale=abs(h_saturated) + 1e4, settled=1e-13)
+    return newton_in_bracket(residual, 0.0, Ws, 0.5 * Ws, scale=abs(h_saturated) + 1e4, exact=False)

@@ -11,6 +11,8 @@ from __future__ import annotations
 import math
 from collections.abc import Collection, Mapping, Sequence
 
+import CoolProp
+import CoolProp.CoolProp as CoolPropLibrary
 import numpy as np
 
 from service.errors import CaseError, StateOutOfRange
@@ -71,8 +73,21 @@ class IdealGasMixture(BasePointFluid):
         )
 
     def saturation(self, *, p: float | None = None, T: float | None = None) -> float | None:
-        """None: ideal gases do not condense."""
+        """None: ideal gases do not condense; `dew_point` says where real ones of this composition would."""
         return None
+
+    def dew_point(self, p: float) -> float | None:
+        """T [K] at which the mixture's water would condense at p [Pa], by Raoult's law; None without water.
+
+        For advisories: p_sat(T) = x_water p, saturation of IAPWS-95. Above the critical pressure of water, and below
+        its triple point, None.
+        """
+        x = self.mole_fractions.get("Water", 0.0)
+        handle = CoolPropLibrary.AbstractState("HEOS", "Water")
+        if not handle.trivial_keyed_output(CoolPropLibrary.iP_triple) < x * p < handle.p_critical():
+            return None
+        handle.update(CoolProp.PQ_INPUTS, x * p, 1.0)
+        return float(handle.T())
 
     def bounds(self, name: str) -> tuple[float, float]:
         """Search bounds [SI] for one property."""

@@ -115,6 +115,10 @@ class RealGasMixture(BasePointFluid):
         """The dew temperature [K] at p [Pa]; None for a given T, where the dew pressure may be double-valued."""
         return self._dew.exact(p) if p is not None and LOWEST_PRESSURE <= p <= HIGHEST_PRESSURE else None
 
+    def dew_point(self, p: float) -> float | None:
+        """The dew temperature [K] at p [Pa]."""
+        return self.saturation(p=p)
+
     def bounds(self, name: str) -> tuple[float, float]:
         """Search bounds [SI] for one property; the lower temperature bound is the dew point at the lowest pressure."""
         T_low = max(self.limits.T_min, self._dew.temperature(LOWEST_PRESSURE) * 1.01)

@@ -123,6 +123,14 @@ def test_wet_bulb_is_the_temperature_of_adiabatic_saturation(p, T, w):
     assert supplied == pytest.approx(saturated["h"], rel=1e-7)
 
 
+@pytest.mark.parametrize("other", ["h", "s"])
+def test_dense_hot_and_wet_air_is_found_where_its_heat_capacity_is_far_from_that_of_a_gas(other):
+    p, T, w = 8.26e6, 526.6, 0.8
+    state = at(p, T, w)
+    back = AIR.state(("p", "humidity_ratio", other), (p, w, state[other])).values
+    assert back["T"] == pytest.approx(T, rel=1e-10)
+
+
 def test_saturated_air_has_one_temperature_three_times():
     state = AIR.state(("p", "T", "relative_humidity"), (ATMOSPHERE, 300.0, 1.0)).values
     assert state["wet_bulb"] == pytest.approx(300.0, rel=1e-9)

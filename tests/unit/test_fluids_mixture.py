@@ -246,7 +246,9 @@ def test_values_that_belong_below_the_dew_point_are_refused(pair, value):
 
 def test_dew_point_of_humid_flue_gas_is_that_of_its_water():
     # Raoult: p_w = 0.17 bar; IAPWS R7-97 region 4 gives T_sat(17 kPa) = 329.75 K; gas solubility is negligible
-    assert REAL_FLUE_GAS.saturation(p=1e5) == pytest.approx(329.75, abs=0.2)
+    assert REAL_FLUE_GAS.dew_point(1e5) == pytest.approx(329.75, abs=0.2)
+    assert IDEAL_FLUE_GAS.dew_point(1e5) == pytest.approx(329.75, abs=0.05)
+    assert ideal(SYNTHESIS_GAS).dew_point(1e5) is None
 
 
 @pytest.mark.parametrize("fractions", [FLUE_GAS, NATURAL_GAS, DRY_AIR])
