@@ -15,7 +15,7 @@ from typing import Any
 from marshmallow import Schema, fields
 
 from service.balance.solution import EntropyCheck, LedgerAccount, LedgerLine, Solution, StepRecord, StreamState
-from service.wire.presenting import Presenter, Shown, rounded
+from service.wire.presenting import NO_MEANING, SINGLE_PHASE, Presenter, Shown, rounded
 from service.wire.provenance import provenance
 from service.wire.vocabulary import DERIVED_STATE, STATE, STREAM
 
@@ -26,7 +26,6 @@ DEFERENCE = (
     "or the judgement of a licensed professional."
 )
 
-SINGLE_PHASE = "the state has a single phase"
 OUT_OF_SYSTEM_NOTE = (
     "Work is listed positive out of the system; the sum counts it into the system, that is with the opposite sign."
 )
@@ -102,10 +101,11 @@ class Answer:
             out["fluid"] = state.fluid
         if state.phase:
             out["phase"] = state.phase
-        quantity, reason = self.presenter.quantity, SINGLE_PHASE
+        quantity = self.presenter.quantity
         for name, value in state.properties.items():
             kind = STATE.get(name) or DERIVED_STATE.get(name)
             if kind is not None:
+                reason = SINGLE_PHASE if name == "x" else NO_MEANING
                 out[name] = quantity(value, kind, self.asked.get(f"{state.stream}.{name}"), reason)
         for name, value in state.flows.items():
             out[name] = quantity(value, STREAM[name], self.asked.get(f"{state.stream}.{name}"))

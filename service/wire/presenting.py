@@ -11,13 +11,14 @@ from service.units import System, Unit, UnitTable
 
 Shown: TypeAlias = dict[str, object]
 
-DIGITS = 9
-"""Significant digits of a value: more than any property model has, fewer than floating-point noise reaches."""
+DIGITS = 12
+"""Significant digits of a value: lines as printed still add up to 1e-11, and floating-point noise is cut off."""
 
 FORMULA_DIGITS = 7
 """Significant digits of a number inside a formula: enough to recompute the result by hand, short enough to read."""
 
-NO_MEANING = "has no meaning for this state"
+NO_MEANING = "it has no meaning for this state"
+SINGLE_PHASE = "the state has a single phase"
 
 
 def rounded(value: float, digits: int = DIGITS) -> float:
@@ -62,7 +63,7 @@ class Presenter:
             shown = unit.symbol
         if not math.isfinite(value):
             return {"value": None, "unit": shown, "reason": reason}
-        return {"value": float(f"{(value - zero) / factor:.9g}") + 0.0, "unit": shown}
+        return {"value": float(f"{(value - zero) / factor:.{DIGITS}g}") + 0.0, "unit": shown}
 
     def difference(self, value: float, kind: str, symbol: str | None = None) -> float:
         """A difference or uncertainty [SI] in the unit of the kind, without the unit's zero."""
@@ -83,7 +84,7 @@ class Presenter:
             unit = self.units.coherent(kind, self.system)
             known = self._formula[kind] = (*self.zero_and_factor(unit), "" if unit.symbol == "-" else unit.symbol)
         zero, factor, symbol = known
-        shown = f"{(value - zero) / factor:.7g}"
+        shown = f"{(value - zero) / factor:.{FORMULA_DIGITS}g}"
         if symbol:
             return f"({shown} {symbol})"
         return f"({shown})" if shown[0] == "-" else shown

@@ -17,7 +17,7 @@ from service.units import Unit, UnitTable
 from service.wire.addresses import AddressBook
 from service.wire.findings import Findings
 from service.wire.pointers import pointer
-from service.wire.presenting import Presenter
+from service.wire.presenting import DIGITS, Presenter
 
 Column = npt.NDArray[np.float64]
 SOLVED = "solved"
@@ -211,5 +211,5 @@ def _unsolved(
 
 
 def numbers(column: Column) -> list[float | None]:
-    """A column for JSON: nine significant digits, null where there is no value."""
-    return [float(f"{v:.9g}") + 0.0 if math.isfinite(v) else None for v in column.tolist()]
+    """A column for JSON: twelve significant digits, null where there is no value."""
+    return [float(f"{v:.{DIGITS}g}") + 0.0 if math.isfinite(v) else None for v in column.tolist()]

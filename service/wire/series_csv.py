@@ -22,6 +22,7 @@ from service.errors import SchemaViolation
 from service.wire.findings import Findings
 from service.wire.operations import Operations
 from service.wire.pointers import pointer
+from service.wire.presenting import DIGITS
 from service.wire.series import SOLVED, Column, SeriesRun
 from service.wire.suggest import quoted
 
@@ -154,7 +155,7 @@ def _numbers(cells: list[str], bad: set[int]) -> Column:
 
 
 def _texts(column: Column, bad: set[int]) -> list[str]:
-    texts = [f"{v:.9g}" if v == v else "" for v in column.tolist()]
+    texts = [f"{v:.{DIGITS}g}" if v == v else "" for v in column.tolist()]
     for row in bad:
         texts[row] = ""
     return texts

@@ -16,13 +16,14 @@ from service.units import UnitTable
 from service.wire.building import CaseBuilder
 from service.wire.findings import Findings
 from service.wire.pointers import token
-from service.wire.presenting import Presenter
+from service.wire.presenting import NO_MEANING, SINGLE_PHASE, Presenter
 from service.wire.provenance import provenance
 from service.wire.shapes import Shape, pruned, report
+from service.wire.suggest import listed
 from service.wire.vocabulary import DERIVED_STATE, SATURATED, STATE
 
-EXTRAS = ("cp", "cv", "speed_of_sound", "viscosity", "conductivity", "thermal_conductivity", "superheat", "subcooling")
-"""Told beside the basic properties where the model has them."""
+ASKED = ("superheat", "subcooling")
+"""State properties that a model works out only when asked."""
 
 LIMIT_KINDS = {
     "T_min": "temperature",
@@ -59,7 +60,7 @@ def answer_state(document: Any, shape: Shape, units: UnitTable, catalogue: Fluid
     return {
         "fluid": fluid.name,
         "phase": state.phase,
-        "state": _shown(state, given, presenter),
+        "state": _shown(state, presenter),
         "saturation": _saturation(fluid, state, presenter),
         "limits": limits_of(fluid.limits, presenter),
         "provenance": provenance([source_of(fluid)], document),
@@ -114,7 +115,8 @@ def spec_of(declared: DeclaredFluid) -> FluidSpec:
 
 
 def _state(fluid: Fluid, given: Mapping[str, Quantity], agreement: float) -> State:
-    strangers = [name for name in given if name not in fluid.properties and name not in EXTRAS]
+    can_be_given = [name for name in fluid.properties if name in STATE]
+    strangers = [name for name in given if name not in can_be_given]
     if strangers:
         raise SchemaViolation(
             f"{strangers[0]} is not a property of {fluid.name}.",
@@ -122,7 +124,7 @@ def _state(fluid: Fluid, given: Mapping[str, Quantity], agreement: float) -> Sta
                 Issue(
                     f"{name} is not a property of {fluid.name}.",
                     name,
-                    f"Its properties are {', '.join(fluid.properties)}.",
+                    f"Its properties are {listed(can_be_given)}.",
                 )
                 for name in strangers
             ],
@@ -136,11 +138,11 @@ def _state(fluid: Fluid, given: Mapping[str, Quantity], agreement: float) -> Sta
                 Issue(
                     f"A state of {fluid.name} needs {number} independent properties; {len(given)} given.",
                     next(iter(given), ""),
-                    f"Give {number} of {', '.join(fluid.properties)}.",
+                    f"Give {number} of {listed(can_be_given)}.",
                 )
             ],
         )
-    extras = tuple(name for name in EXTRAS if name in fluid.properties or name in ("superheat", "subcooling"))
+    extras = tuple(name for name in fluid.properties if name in DERIVED_STATE or name in ASKED)
     state = fluid.state(inputs, tuple(_value(given[name]) for name in inputs), extras)
     for name, quantity in given.items():
         if name not in inputs:
@@ -180,13 +182,12 @@ def _placed(error: CaseError, given: Mapping[str, Quantity]) -> CaseError:
     return type(error)(error.detail, issues)
 
 
-def _shown(state: State, given: Mapping[str, Quantity], presenter: Presenter) -> dict[str, Any]:
+def _shown(state: State, presenter: Presenter) -> dict[str, Any]:
     out = {}
     for name, value in state.values.items():
         kind = STATE.get(name) or DERIVED_STATE.get(name)
         if kind is not None and (math.isfinite(value) or name in STATE):
-            out[name] = presenter.quantity(value, kind)
-    del given
+            out[name] = presenter.quantity(value, kind, None, SINGLE_PHASE if name == "x" else NO_MEANING)
     return out
 
 

@@ -26,12 +26,13 @@ STREAM_ALL: Mapping[str, str] = MappingProxyType({**STREAM, **STATE})
 
 DERIVED_STATE = _table(
     cp="specific_entropy",
+    cv="specific_entropy",
+    kappa="dimensionless",
     speed_of_sound="velocity",
     viscosity="viscosity",
-    thermal_conductivity="thermal_conductivity",
-    T_sat="temperature",
-    p_sat="pressure",
+    conductivity="thermal_conductivity",
     molar_mass="molar_mass",
+    mole_fraction_water="dimensionless",
 )
 """Properties that are told of a state but cannot be given."""
 
