@@ -66,20 +66,20 @@ def resolve_fluids(case: Case, catalogue: FluidCatalogue) -> dict[str, Fluid | N
     """Property model of each stream. Raises UnknownFluid, and SchemaViolation where the fluid is not clear."""
     keys = fluid_keys(case)
     models: dict[str, Fluid] = {}
-    problems: list[CaseError] = []
+    problems: dict[str, CaseError] = {}
     for stream in case.streams:
         key = keys[stream.id]
-        if key is None or key in models:
+        if key is None or key in models or key in problems:
             continue
         try:
             models[key] = catalogue.resolve(_spec(case, key))
         except CaseError as problem:
             pointer = f"#/fluids/{key}" if key in case.fluids else f"{stream.pointer}/fluid"
-            problems.append(
-                type(problem)(problem.detail, [_at(i, pointer) for i in problem.issues or [Issue(problem.detail)]])
-            )
+            issues = [_at(issue, pointer) for issue in problem.issues or (Issue(problem.detail),)]
+            problems[key] = type(problem)(problem.detail, issues)
     if problems:
-        raise type(problems[0])(problems[0].detail, [i for p in problems for i in p.issues])
+        first, *_ = problems.values()
+        raise type(first)(first.detail, [issue for p in problems.values() for issue in p.issues])
     _refuse_two_models_of_one_substance(models)
     return {s.id: models[key] if (key := keys[s.id]) is not None else None for s in case.streams}
 
