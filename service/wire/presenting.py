@@ -14,8 +14,8 @@ Shown: TypeAlias = dict[str, object]
 DIGITS = 12
 """Significant digits of a value: lines as printed still add up to 1e-11, and floating-point noise is cut off."""
 
-FORMULA_DIGITS = 7
-"""Significant digits of a number inside a formula: enough to recompute the result by hand, short enough to read."""
+FORMULA_DIGITS = 9
+"""Significant digits of a number inside a formula: after the difference of two close enthalpies six are left."""
 
 NO_MEANING = "it has no meaning for this state"
 SINGLE_PHASE = "the state has a single phase"
@@ -78,7 +78,7 @@ class Presenter:
         return f"{rounded((value - zero) / factor, 7):.7g} {unit.symbol}".removesuffix(" -")
 
     def in_formula(self, value: float, kind: str) -> str:
-        """`(3.333333 kg/s)`: a number with a unit that multiplies out with the others of its system."""
+        """`(3.33333333 kg/s)`: a number with a unit that multiplies out with the others of its system."""
         known = self._formula.get(kind)
         if known is None:
             unit = self.units.coherent(kind, self.system)

@@ -50,13 +50,13 @@ def answer_state(document: Any, shape: Shape, units: UnitTable, catalogue: Fluid
     given = _given(body, builder)
     findings.raise_any()
     fluid = _fluid(body["fluid"], declared, catalogue)
+    presenter = Presenter(units, options.units, site.atmospheric_pressure)
     try:
         if site.pressure_given and fluid.pressure_optional and "p" not in given and fluid.dof > 1:
             given.setdefault("p", Quantity("p", "pressure", site.atmospheric_pressure, pointer="#/site"))
         state = _state(fluid, given, options.agreement)
     except CaseError as error:
-        raise _placed(error, given) from error
-    presenter = Presenter(units, options.units, site.atmospheric_pressure)
+        raise _placed(error, given, presenter) from error
     return {
         "fluid": fluid.name,
         "phase": state.phase,
@@ -172,14 +172,15 @@ def _agrees(name: str, quantity: Quantity, state: State, agreement: float) -> No
         )
 
 
-def _placed(error: CaseError, given: Mapping[str, Quantity]) -> CaseError:
-    """The error with pointers into a states request, where addresses are bare property names."""
+def _placed(error: CaseError, given: Mapping[str, Quantity], presenter: Presenter) -> CaseError:
+    """The error in the reader's units, with pointers into a states request, where addresses are property names."""
     issues = []
     for issue in error.issues or (Issue(error.detail),):
         name = issue.address.rpartition(".")[2]
         place = given[name].pointer if name in given else "#/state"
-        issues.append(Issue(issue.detail, issue.address, issue.hint, issue.pointer or place, issue.amounts))
-    return type(error)(error.detail, issues)
+        detail = issue.told(presenter.text)
+        issues.append(Issue(detail, issue.address, issue.hint, issue.pointer or place))
+    return type(error)(issues[0].detail if len(issues) == 1 else error.detail, issues)
 
 
 def _shown(state: State, presenter: Presenter) -> dict[str, Any]:
