@@ -13,7 +13,7 @@ from contextlib import contextmanager
 from contextvars import ContextVar
 from typing import Any
 
-from marshmallow import EXCLUDE, Schema, fields, post_load
+from marshmallow import EXCLUDE, Schema, fields, missing, post_load
 
 from service.balance.case import (
     STANDARD_ATMOSPHERE,
@@ -83,13 +83,20 @@ def _during(reading: _Reading) -> Iterator[None]:
         _READING.reset(token_of_before)
 
 
+class Plain(fields.Field[Any]):
+    """A member taken as it is: the JSON Schema has decided its type, so that nothing is coerced or checked again."""
+
+    def deserialize(self, value: Any, attr: str | None = None, data: Any = None, **_: Any) -> Any:
+        return self.load_default if value is missing else value
+
+
 class _ItemSchema(Schema):
     class Meta:
         unknown = EXCLUDE
 
 
 class BoundarySchema(_ItemSchema):
-    id = fields.Raw()
+    id = Plain()
 
     @post_load
     def build(self, data: Body, **_: Any) -> Boundary:
@@ -97,11 +104,11 @@ class BoundarySchema(_ItemSchema):
 
 
 class StreamSchema(_ItemSchema):
-    id = fields.Raw()
-    source = fields.Raw(data_key="from", load_default=None)
-    target = fields.Raw(data_key="to", load_default=None)
-    fluid = fields.Raw(load_default=None)
-    side = fields.Raw(load_default=None)
+    id = Plain()
+    source = Plain(data_key="from", load_default=None)
+    target = Plain(data_key="to", load_default=None)
+    fluid = Plain(load_default=None)
+    side = Plain(load_default=None)
 
     @post_load(pass_original=True)
     def build(self, data: Body, original: Body, **_: Any) -> Stream:
@@ -135,12 +142,12 @@ def _saturated(reading: _Reading, state: Body, quantities: dict[str, Quantity]) 
 
 
 class TransferSchema(_ItemSchema):
-    id = fields.Raw()
-    kind = fields.Raw()
-    source = fields.Raw(data_key="from", load_default=None)
-    target = fields.Raw(data_key="to", load_default=None)
-    law = fields.Raw(load_default=None)
-    basis = fields.Raw(load_default=None)
+    id = Plain()
+    kind = Plain()
+    source = Plain(data_key="from", load_default=None)
+    target = Plain(data_key="to", load_default=None)
+    law = Plain(load_default=None)
+    basis = Plain(load_default=None)
 
     @post_load(pass_original=True)
     def build(self, data: Body, original: Body, **_: Any) -> Transfer:
@@ -170,9 +177,9 @@ class TransferSchema(_ItemSchema):
 
 
 class RelationSchema(_ItemSchema):
-    kind = fields.Raw()
-    of = fields.Raw(load_default=())
-    arrangement = fields.Raw(load_default=None)
+    kind = Plain()
+    of = Plain(load_default=())
+    arrangement = Plain(load_default=None)
 
     @post_load(pass_original=True)
     def build(self, data: Body, original: Body, **_: Any) -> Relation:
@@ -187,11 +194,11 @@ class RelationSchema(_ItemSchema):
 
 
 class AnswerOptionsSchema(_ItemSchema):
-    units = fields.Raw()
-    detail = fields.Raw()
-    work_positive = fields.Raw()
-    agreement = fields.Raw()
-    coverage = fields.Raw()
+    units = Plain()
+    detail = Plain()
+    work_positive = Plain()
+    agreement = Plain()
+    coverage = Plain()
 
     @post_load
     def build(self, data: Body, **_: Any) -> AnswerOptions:
@@ -201,9 +208,9 @@ class AnswerOptionsSchema(_ItemSchema):
 class FluidSchema(_ItemSchema):
     """A declared fluid; its numbers are quantities."""
 
-    kind = fields.Raw()
-    name = fields.Raw(load_default=None)
-    model = fields.Raw(load_default=None)
+    kind = Plain()
+    name = Plain(load_default=None)
+    model = Plain(load_default=None)
 
     @post_load(pass_original=True)
     def build(self, data: Body, original: Body, **_: Any) -> Fluid:
