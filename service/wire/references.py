@@ -38,7 +38,7 @@ def check_references(document: object, book: AddressBook, findings: Findings) ->
             findings.add(SchemaViolation, detail, pointer=f"#/limits/{number}/of", hint=hint)
 
 
-def _boundaries(document: object, findings: Findings) -> list[str]:
+def _boundaries(document: object, findings: Findings) -> Mapping[str, int]:
     names: dict[str, int] = {}
     for number, item in items(document, "boundaries"):
         name = item.get("id")
@@ -47,7 +47,7 @@ def _boundaries(document: object, findings: Findings) -> list[str]:
         if name in names:
             _twice(name, f"#/boundaries/{names[name]}", f"#/boundaries/{number}/id", findings)
         names.setdefault(name, number)
-    return list(names)
+    return names
 
 
 def _unique_items(document: object, findings: Findings) -> None:
@@ -73,7 +73,9 @@ def _twice(name: str, first: str, second: str, findings: Findings) -> None:
     )
 
 
-def _ends(group: str, number: int, item: Mapping[str, object], boundaries: list[str], findings: Findings) -> None:
+def _ends(
+    group: str, number: int, item: Mapping[str, object], boundaries: Mapping[str, int], findings: Findings
+) -> None:
     what, shown = group.removesuffix("s"), quoted(item.get("id"))
     source, target = item.get("from"), item.get("to")
     for end, name in (("from", source), ("to", target)):
@@ -89,7 +91,7 @@ def _ends(group: str, number: int, item: Mapping[str, object], boundaries: list[
             SchemaViolation,
             f"The {what} {shown} touches no boundary.",
             pointer=f"#/{group}/{number}",
-            hint=f'Say where it comes from or goes to: "from" or "to", one of {listed(boundaries)}. '
+            hint=f'Say where it comes from or goes to: "from" or "to", one of {listed(list(boundaries))}. '
             "The end that is left out is the surroundings.",
         )
     elif source is not None and source == target:

@@ -131,7 +131,10 @@ class Shape:
         if not isinstance(document, dict):
             return
         for name, branches in self._places.items():
-            for key, item in _entries(document.get(name)):
+            value = document.get(name)
+            if not isinstance(value, list if self._outline["properties"][name]["type"] == "array" else dict):
+                continue  # told already
+            for key, item in _entries(value):
                 kind = item.get("kind") if isinstance(item, dict) else None
                 pair = branches.get(kind, branches[""]) if isinstance(kind, str) else branches[""]
                 if not pair.decides.is_valid(item):

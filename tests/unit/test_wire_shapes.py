@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+import copy
 import time
 from typing import Any
 
 import pytest
+from hypothesis import HealthCheck, given, settings
+from hypothesis import strategies as st
 
-from service.errors import SchemaViolation
+from service.errors import CaseError, SchemaViolation
 from service.wire.pointers import parts, resolve
 
 from .wire_helpers import issues, let_down, parse, refusal, shape
@@ -178,3 +181,54 @@ def test_a_series_request_is_explained_inside_of_its_case_too() -> None:
         ("readings", "inlet.p"),
         ("readings", "inlet.p", "valus"),
     }
+
+
+WORDS = ["p", "T", "id", "kind", "of", "value", "unit", "between", "law", "state", "saturated", "x", "to", "from", "u"]
+SCRAPS = st.recursive(
+    st.none() | st.booleans() | st.integers() | st.floats(allow_nan=False, allow_infinity=False)
+    | st.sampled_from(["? degC", "40 barg", "valve", "inlet", "outlet.T", "liquid", "heat", "sum", "fuel", "1e999 K"])
+    | st.text(st.characters(exclude_categories=["Cs"]), max_size=12),
+    lambda inner: st.lists(inner, max_size=4) | st.dictionaries(st.sampled_from(WORDS), inner, max_size=4),
+    max_leaves=8,
+)  # fmt: skip
+SEED = {
+    **let_down(),
+    "fluids": {"oil": {"kind": "constant_liquid", "density": "870 kg/m3", "cp": "2.1 kJ/kg/K"}},
+    "relations": [
+        {"kind": "ratio", "of": ["inlet.p", "outlet.p"], "value": "?"},
+        {"id": "eff", "kind": "isentropic_efficiency", "from": "inlet", "to": "outlet", "value": {"value": 0.8}},
+        {"id": "hole", "kind": "restriction", "stream": "inlet", "bore": "3 mm", "discharge_coefficient": 0.8},
+    ],
+}
+
+
+def places(value: Any, here: tuple[Any, ...] = ()) -> list[tuple[Any, ...]]:
+    inner = value.items() if isinstance(value, dict) else enumerate(value) if isinstance(value, list) else ()
+    return [here] * bool(here) + [place for key, item in inner for place in places(item, (*here, key))]
+
+
+@settings(max_examples=200, suppress_health_check=[HealthCheck.too_slow])
+@given(st.lists(st.tuples(st.sampled_from(places(SEED)), SCRAPS), min_size=1, max_size=4))
+def test_whatever_is_wrong_with_a_case_is_told_at_places_that_exist(scraps: list[tuple[tuple[Any, ...], Any]]) -> None:
+    document: Any = copy.deepcopy(SEED)
+    for place, scrap in scraps:
+        here = document
+        for key in place[:-1]:
+            here = here[key] if reaches(here, key) else None
+        if reaches(here, place[-1]):
+            here[place[-1]] = scrap
+    told = ()
+    try:
+        parse(document)
+    except CaseError as error:
+        told = error.issues
+    for issue in told:
+        resolve(document, issue.pointer)
+        assert issue.detail
+        assert len(issue.detail) + len(issue.hint) < 1500
+
+
+def reaches(value: Any, key: Any) -> bool:
+    if isinstance(value, dict):
+        return key in value
+    return isinstance(value, list) and key in range(len(value))
