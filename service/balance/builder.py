@@ -132,8 +132,9 @@ class Builder:
         if item in self.transfers:
             return self.variable(item, name, TRANSFER[name])
         relation = self.relations[item]
-        trait = RELATION[relation.kind if name == "value" and relation.kind in RELATION else name]
-        return self.variable(item, name, trait)
+        if name == "value" and relation.kind not in RELATION:  # a difference, ratio or sum: the kind is what it ties
+            return self.variable(item, name, Trait(relation.quantities[name].kind, 1.0))
+        return self.variable(item, name, RELATION[relation.kind if name == "value" else name])
 
     def stream_quantity(self, stream: Stream, name: str) -> int:
         return self.state(stream, name) if name in STATE_PROPERTIES else self.flow(stream, name)

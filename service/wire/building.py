@@ -38,6 +38,7 @@ from service.wire.vocabulary import (
     FLUID,
     FOLLOWS_ADDRESSES,
     HEAT_LAW,
+    OPENINGS,
     RELATION,
     RELATION_STREAMS,
     SATURATED,
@@ -65,7 +66,15 @@ class _Reading:
             kind = table.get(name)
             if kind is not None:
                 quantity = self.reader.quantity(raw, kind, f"{self.id}.{name}", f"{base}/{name}")
-                if quantity is not None:
+                if quantity is not None and quantity.value is not None and quantity.value <= 0.0 and name in OPENINGS:
+                    self.reader.findings.add(
+                        SchemaViolation,
+                        f"A {name} has to be above zero.",
+                        pointer=quantity.pointer,
+                        address=quantity.address,
+                        hint="Leave it out where nothing is known of it.",
+                    )
+                elif quantity is not None:
                     found[name] = quantity
         return found
 

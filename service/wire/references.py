@@ -10,8 +10,6 @@ from service.wire.findings import Findings
 from service.wire.suggest import did_you_mean, listed, quoted
 from service.wire.vocabulary import FOLLOWS_ADDRESSES, RELATION, RELATION_STREAMS
 
-CIRCLES = "difference", "sum"
-
 
 def check_references(document: object, book: AddressBook, findings: Findings) -> None:
     """Check every name of a request, reading the document as it was sent."""
@@ -31,6 +29,13 @@ def check_references(document: object, book: AddressBook, findings: Findings) ->
             if isinstance(name, str):
                 _stream(name, streams, f"#/relations/{number}/{role}", findings)
         _tied(number, item, book, findings)
+        if "bore" in item and "area" in item:
+            findings.add(
+                SchemaViolation,
+                "The size of the opening is said twice, by `bore` and by `area`.",
+                pointer=f"#/relations/{number}/area",
+                hint="Keep one of them.",
+            )
     for number, item in items(document, "limits"):
         of = item.get("of")
         if isinstance(of, str) and book.kind(of) is None:

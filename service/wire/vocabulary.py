@@ -90,6 +90,9 @@ RELATION_STREAMS: Mapping[str, tuple[str, ...]] = MappingProxyType(
 )
 """Relation kind → the streams it speaks of, by role; the kinds that are missing here tie addresses (`of`)."""
 
+OPENINGS = frozenset({"bore", "area"})
+"""Sizes that are above zero, although other lengths may be below."""
+
 ARRANGEMENTS = ("counterflow", "parallel_flow", "shell_and_tube")
 
 DIFFERENCE_OF = MappingProxyType({"temperature": "temperature_difference", "pressure": "pressure_difference"})

@@ -77,6 +77,8 @@ def test_relations_without_an_id_are_called_by_their_place() -> None:
         ({"kind": "sum", "of": ["relation-1.value", "loss.rate"], "value": "?"}, "of", "own value"),
         ({"kind": "isentropic_efficiency", "from": "inlet", "to": "outlt", "value": "?"}, "to", "outlet"),
         ({"kind": "restriction", "stream": "valve"}, "stream", "no stream"),
+        ({"kind": "restriction", "stream": "inlet", "bore": "0 mm"}, "bore", "above zero"),
+        ({"kind": "restriction", "stream": "inlet", "bore": "3 mm", "area": "1 cm2"}, "area", "said twice"),
         ({"kind": "difference", "of": ["inlet.T", "outlet.T"], "value": "5 degC"}, "value", "temperature difference"),
         ({"kind": "difference", "of": ["inlet.p", "outlet.p"], "value": "5 barg"}, "value", "pressure difference"),
         ({"kind": "ratio", "of": ["inlet.p", "outlet.p"], "value": "5 bar"}, "value", "dimensionless"),
