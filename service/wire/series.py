@@ -75,8 +75,10 @@ def columns_to_si(
             if bad.any():
                 si = np.where(bad, np.nan, si)
                 title = units.kinds[plan.kind].title
+                unit = f" {plan.unit.symbol}" if plan.unit is not None else ""
                 for row in np.flatnonzero(bad):
-                    impossible.setdefault(int(row), f"{plan.address}: a {title} of {column[row]:.9g} cannot exist.")
+                    why = f"{plan.address}: a {title} of {column[row]:.9g}{unit} cannot exist."
+                    impossible.setdefault(int(row), why)
         converted[plan.address] = si
     return converted, impossible
 
