@@ -64,14 +64,37 @@ class Provenance:
 class Fluid(Protocol):
     """A property model. `inputs` and `state` speak of properties by their names: p T h s u rho v x ..."""
 
-    name: str
-    kind: str
-    molar_mass: float | None
-    dof: int
-    properties: tuple[str, ...]
-    limits: Limits
-    provenance: Provenance
-    pressure_optional: bool
+    @property
+    def name(self) -> str:
+        """What answers call it; two models of one substance have the same name."""
+
+    @property
+    def kind(self) -> str:
+        """Kind of FluidSpec that it came from."""
+
+    @property
+    def molar_mass(self) -> float | None:
+        """[kg/mol]"""
+
+    @property
+    def dof(self) -> int:
+        """How many independent properties fix a state: 2, humid air 3."""
+
+    @property
+    def properties(self) -> tuple[str, ...]:
+        """Names of the properties that its states can have."""
+
+    @property
+    def limits(self) -> Limits:
+        """Range of validity."""
+
+    @property
+    def provenance(self) -> Provenance:
+        """What computes, its source, and where h and s are zero."""
+
+    @property
+    def pressure_optional(self) -> bool:
+        """Whether p may be taken as atmospheric where nobody mentions it."""
 
     def inputs(self, known: Collection[str]) -> tuple[str, ...] | None:
         """Which of the known properties to start from; None where they do not fix a state."""

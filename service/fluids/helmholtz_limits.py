@@ -1,0 +1,148 @@
+"""The range of a Helmholtz equation of state, measured once on the property library itself."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass
+from typing import Any
+
+import CoolProp
+import CoolProp.CoolProp as CoolPropLibrary
+
+from service.fluids.protocol import Limits
+
+Range = tuple[float, float]
+
+LOWEST_PRESSURE = 1e-6  # [Pa] any gas is ideal far above it
+SPARE = 0.02  # how much wider than what was measured the spans are, relative
+
+
+@dataclass(frozen=True, slots=True)
+class Measured:
+    """limits; spans: property → range [SI] of all states; line: T and p of the saturation line.
+
+    melts_below: temperature [K] below which a state has to be held against the melting line (or T_min).
+    """
+
+    limits: Limits
+    spans: Mapping[str, Range]
+    line: Mapping[str, Range]
+    melts_below: float
+    has_melting_line: bool
+    p_critical: float
+    T_critical: float
+    rho_critical: float
+    extras: tuple[str, ...]
+
+
+def melting_temperature(backend: Any, p: float) -> float | None:
+    """Temperature [K] at which the fluid freezes at p [Pa], None where the library does not know it."""
+    try:
+        T = float(backend.melting_line(CoolPropLibrary.iT, CoolPropLibrary.iP, p))
+    except ValueError:
+        return None
+    return T if math.isfinite(T) and T > 0.0 else None
+
+
+def melting_pressure(backend: Any, T: float) -> float | None:
+    """Pressure [Pa] at which the fluid freezes at T [K], None where the library does not know it."""
+    try:
+        p = float(backend.melting_line(CoolPropLibrary.iP, CoolPropLibrary.iT, T))
+    except ValueError:
+        return None
+    return p if math.isfinite(p) and p > 0.0 else None
+
+
+def measure(backend: Any) -> Measured:
+    """Limits and spans of the fluid of a state object, which is moved about."""
+    T_min, T_max, p_max = float(backend.Tmin()), float(backend.Tmax()), float(backend.pmax())
+    T_critical, p_critical = float(backend.T_critical()), float(backend.p_critical())
+    T_triple = float(backend.Ttriple())
+    low = max(T_triple, T_min)
+    p_triple, p_top = _ends_of_line(backend, low, T_critical, p_critical)
+    melting = _melting_points(backend, p_triple, p_max)
+    limits = Limits(
+        T_min=T_min, T_max=T_max, p_max=p_max, p_min=0.0,
+        T_triple=T_triple, p_triple=p_triple, T_critical=T_critical, p_critical=p_critical,
+    )  # fmt: skip
+    spans = _spans(backend, limits, melting)
+    spans["T"] = (min([T_min, *melting]), T_max * (1 + 1e-12))
+    spans["p"] = (LOWEST_PRESSURE, p_max * (1 + 1e-12))
+    return Measured(
+        limits=limits, spans=spans, line={"p": (p_triple, p_top), "T": (low, T_critical)},
+        melts_below=max([T_min, *(1.0001 * T for T in melting)]), has_melting_line=bool(melting),
+        p_critical=p_critical, T_critical=T_critical, rho_critical=float(backend.rhomass_critical()),
+        extras=("cp", "cv", "speed_of_sound", *_transport(backend, T_critical)),
+    )  # fmt: skip
+
+
+def _ends_of_line(backend: Any, low: float, T_critical: float, p_critical: float) -> Range:
+    lowest = []
+    for x in (0.0, 1.0):  # they differ for a blend
+        backend.update(CoolProp.QT_INPUTS, x, low)
+        lowest.append(float(backend.p()))
+    try:
+        backend.update(CoolProp.QT_INPUTS, 0.0, T_critical)
+        top = float(backend.p())
+    except ValueError:
+        top = math.nan
+    return max(lowest), min(top, p_critical) if top == top else p_critical * (1 - 1e-9)
+
+
+def _melting_points(backend: Any, p_triple: float, p_max: float) -> list[float]:
+    if not backend.has_melting_line():
+        return []
+    ratio = p_max / p_triple
+    grid = (p_triple * ratio ** (part / 40.0) for part in range(41))
+    return [T for p in grid if (T := melting_temperature(backend, p)) is not None]
+
+
+def _corners(backend: Any, limits: Limits) -> Iterator[None]:
+    """Moves the state object to the outermost states, one after another."""
+    low = max(limits.T_min, limits.T_triple or 0.0)
+    coldest = 1.0001 * max(limits.T_min, melting_temperature(backend, limits.p_max) or 0.0)
+    places = [
+        (CoolProp.QT_INPUTS, 0.0, low),
+        (CoolProp.QT_INPUTS, 1.0, low),
+        *((CoolProp.PT_INPUTS, p, T) for p in (LOWEST_PRESSURE, 1e5, limits.p_max) for T in (coldest, limits.T_max)),
+        (CoolProp.PT_INPUTS, LOWEST_PRESSURE, 1.0001 * low),
+    ]
+    for pair, first, second in places:
+        try:
+            backend.update(pair, first, second)
+        except ValueError:
+            continue
+        yield
+
+
+def _spans(backend: Any, limits: Limits, melting: list[float]) -> dict[str, Range]:
+    seen: dict[str, list[float]] = {"h": [], "s": [], "u": [], "rho": []}
+    for _ in _corners(backend, limits):
+        for name, value in (
+            ("h", backend.hmass()), ("s", backend.smass()), ("u", backend.umass()), ("rho", backend.rhomass()),
+        ):  # fmt: skip
+            if math.isfinite(value):
+                seen[name].append(value)
+    spans = {}
+    for name, values in seen.items():
+        low, high = min(values), max(values)
+        spare = SPARE * (high - low)
+        spans[name] = (low - spare, high + spare)
+    densest = spans["rho"][1] * (1.5 if melting else 2.0)
+    spans["rho"] = (1e-15, densest)
+    spans["v"] = (1.0 / densest, 1e15)
+    return spans
+
+
+def _transport(backend: Any, T_critical: float) -> Iterator[str]:
+    for name in ("viscosity", "conductivity"):
+        for x in (0.0, 1.0):
+            try:
+                backend.update(CoolProp.QT_INPUTS, x, 0.8 * T_critical)
+                value = getattr(backend, name)()
+            except ValueError:
+                continue
+            if math.isfinite(value) and value > 0.0:
+                yield name
+                break
