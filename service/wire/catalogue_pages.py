@@ -4,10 +4,12 @@ from __future__ import annotations
 
 from typing import Any
 
+from service.errors import NotFound, UnknownFluid
 from service.fluids.catalogue import FluidCatalogue
 from service.units import UnitTable
 from service.wire.presenting import Presenter
-from service.wire.stating import limits_of, source_of
+from service.wire.stating import limits_of
+from service.wire.vocabulary import FLUID
 
 
 def describe_units(units: UnitTable) -> dict[str, Any]:
@@ -33,19 +35,30 @@ def describe_units(units: UnitTable) -> dict[str, Any]:
 
 
 def describe_fluids(catalogue: FluidCatalogue) -> dict[str, Any]:
-    """The names of every fluid."""
-    return {"fluids": list(catalogue.names())}
+    """Every fluid that can be named, and the kinds that a case can declare."""
+    return {"fluids": list(catalogue.names()), "declared_kinds": list(FLUID)}
 
 
 def describe_one_fluid(name: str, catalogue: FluidCatalogue, presenter: Presenter) -> dict[str, Any]:
-    """Limits, properties and source of one fluid. Raises UnknownFluid."""
-    fluid = catalogue.resolve(name)
-    source = source_of(fluid)
-    out: dict[str, Any] = {"name": fluid.name, "kind": fluid.kind, "properties": list(fluid.properties)}
-    if fluid.molar_mass is not None:
-        out["molar_mass"] = presenter.quantity(fluid.molar_mass, "molar_mass")
-    out["limits"] = limits_of(fluid.limits, presenter)
-    out["model"] = source.model
-    out["citation"] = source.citation
-    out["reference_state"] = source.reference_state
+    """Aliases, models, limits, properties and source of one fluid. Raises NotFound."""
+    try:
+        found = catalogue.describe(name)
+    except UnknownFluid as error:
+        hint = error.issues[0].hint if error.issues else "GET /v1/fluids lists what can be named."
+        raise NotFound(error.detail, hint=hint) from error
+    source = found["provenance"]
+    out = {
+        "name": found["name"],
+        "kind": found["kind"],
+        "aliases": found["aliases"],
+        "models": found["models"],
+        "properties": found["properties"],
+        "limits": limits_of(found["limits"], presenter),
+        "model": source.model,
+        "citation": source.citation,
+        "reference_state": source.reference_state,
+        "notes": list(source.notes),
+    }
+    if found["molar_mass"] is not None:
+        out["molar_mass"] = presenter.quantity(found["molar_mass"], "molar_mass")
     return out

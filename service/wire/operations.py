@@ -188,7 +188,7 @@ class Operations:
         return describe_fluids(self.catalogue)
 
     def fluid(self, name: str) -> Document:
-        """Limits of validity and source of one fluid. Raises UnknownFluid."""
+        """Limits of validity and source of one fluid. Raises NotFound."""
         return describe_one_fluid(name, self.catalogue, Presenter(self.unit_table))
 
     def units(self) -> Document:

@@ -51,15 +51,21 @@ def answer_state(document: Any, shape: Shape, units: UnitTable, catalogue: Fluid
     findings.raise_any()
     fluid = _fluid(body["fluid"], declared, catalogue)
     presenter = Presenter(units, options.units, site.atmospheric_pressure)
+    assumptions: list[str] = []
     try:
-        if site.pressure_given and fluid.pressure_optional and "p" not in given and fluid.dof > 1:
-            given.setdefault("p", Quantity("p", "pressure", site.atmospheric_pressure, pointer="#/site"))
+        if fluid.pressure_optional and "p" not in given:
+            given["p"] = Quantity("p", "pressure", site.atmospheric_pressure, pointer="#/state")
+            assumptions.append(
+                f"No pressure is given: {presenter.text('pressure', site.atmospheric_pressure)}, that of the site, is "
+                f"taken; properties of {fluid.name} hardly depend on it."
+            )
         state = _state(fluid, given, options.agreement)
     except CaseError as error:
         raise _placed(error, given, presenter) from error
     return {
         "fluid": fluid.name,
         "phase": state.phase,
+        "assumptions": assumptions,
         "state": _shown(state, presenter),
         "saturation": _saturation(fluid, state, presenter),
         "limits": limits_of(fluid.limits, presenter),

@@ -173,6 +173,19 @@ def test_a_state_that_cannot_be_found_is_told_where(document: Any, error: type[C
     assert place in issues(found)
 
 
+def test_a_fluid_that_hardly_feels_pressure_takes_that_of_the_site_and_says_so() -> None:
+    oil = {"kind": "constant_liquid", "density": "870 kg/m3", "cp": "2.1 kJ/kg/K"}
+    document = {
+        "fluid": "oil",
+        "fluids": {"oil": oil},
+        "state": {"T": "80 degC"},
+        "site": {"atmospheric_pressure": "0.95 bar"},
+    }
+    found = operations().states(document)
+    assert found["state"]["p"] == {"value": 0.95, "unit": "bar"}
+    assert "0.95 bar" in found["assumptions"][0]
+
+
 def test_everything_wrong_with_a_state_request_is_told_at_once() -> None:
     document = {"fluid": "water", "state": {"p": "1 kg", "T": "-300 degC", "q": 1}, "answer": {"units": "metrics"}}
     assert set(issues(refused(operations().states, document))) == {
@@ -237,6 +250,20 @@ def test_every_unit_is_listed_with_its_kind() -> None:
     assert "barg" in [unit["symbol"] for unit in kinds["pressure"]["units"]]
 
 
+def test_a_fluid_is_described_with_its_limits_and_its_source() -> None:
+    found = operations().fluid("water")
+    assert found["models"] == ["helmholtz", "IF97"]
+    assert found["limits"]["T_critical"]["value"] == pytest.approx(373.946, abs=0.001)  # IAPWS R6-95: 647.096 K
+    assert found["citation"]
+    assert "water" in operations().fluids()["fluids"]
+
+
+def test_a_fluid_that_is_not_there_is_not_found() -> None:
+    with pytest.raises(NotFound) as caught:
+        operations().fluid("watr")
+    assert "water" in caught.value.issues[0].hint
+
+
 def test_every_schema_is_served_by_its_name() -> None:
     names = [entry["name"] for entry in operations().schemas()["schemas"]]
     assert {"case", "series-request", "states-request", "answer", "problem"} <= set(names)
@@ -244,7 +271,7 @@ def test_every_schema_is_served_by_its_name() -> None:
         assert operations().schema(name)["$id"] == f"/v1/schemas/{name}"
 
 
-@pytest.mark.parametrize("what", ["schema", "example"])
+@pytest.mark.parametrize("what", ["schema", "example", "fluid"])
 def test_a_name_that_is_not_there_is_not_found(what: str) -> None:
     with pytest.raises(NotFound, match="nothing-like-it"):
         getattr(operations(), what)("nothing-like-it")
