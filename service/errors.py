@@ -68,68 +68,102 @@ class CaseError(Exception):
 
 
 class MalformedJson(CaseError):
+    """The body is not UTF-8 JSON, repeats a member, nests too deep, or holds a number that is not finite."""
+
     problem_type, status, title = "malformed-json", 400, "The body is not valid JSON"
 
 
 class SchemaViolation(CaseError):
+    """A member is missing, misspelt or of the wrong type, or a reference points to nothing."""
+
     problem_type, title = "schema-violation", "The request does not have the shape of a case"
 
 
 class UnitNotUnderstood(CaseError):
+    """The unit is not in the closed table of symbols; nearby spellings are suggested."""
+
     problem_type, title = "unit-not-understood", "A unit is not known"
 
 
 class UnitOfWrongKind(CaseError):
+    """The unit belongs to another kind of quantity than the one that stands here."""
+
     problem_type, title = "unit-of-wrong-kind", "A unit does not fit its quantity"
 
 
 class UnknownFluid(CaseError):
+    """No property model goes by this name."""
+
     problem_type, title = "unknown-fluid", "A fluid is not known"
 
 
 class UnderSpecified(CaseError):
+    """Something is asked that the given values do not determine; what to add is named."""
+
     problem_type, title = "under-specified", "Something is missing"
 
 
 class OverSpecified(CaseError):
+    """More is given than can be compared."""
+
     problem_type, title = "over-specified", "Too much is given"
 
 
 class Contradictory(CaseError):
+    """Two ways to the same quantity disagree by more than the case allows; both values are shown."""
+
     problem_type, title = "contradictory", "Given values disagree"
 
 
 class StateOutOfRange(CaseError):
+    """A state lies outside the limits of validity of the property model, or outside of physics."""
+
     problem_type, title = "state-out-of-range", "A state lies outside what the property model covers"
 
 
 class StateAmbiguous(CaseError):
+    """The properties given do not fix a state, for example p with T on the saturation line."""
+
     problem_type, title = "state-ambiguous", "The given properties do not fix the state"
 
 
 class NoSolution(CaseError):
+    """The equations have no solution with the values given; the nearest miss is told where there is one."""
+
     problem_type, title = "no-solution", "No state satisfies the case"
 
 
 class NotConverged(CaseError):
+    """The iteration gave up before the equations were satisfied; a start or bounds would help."""
+
     problem_type, title = "not-converged", "The iteration did not converge"
 
 
 class TimeBudgetExceeded(CaseError):
+    """The solution took longer than the service allows."""
+
     problem_type, status, title = "time-budget-exceeded", 503, "The time budget is used up"
 
 
 class PayloadTooLarge(CaseError):
+    """The request body is larger than the service reads."""
+
     problem_type, status, title = "payload-too-large", 413, "The request is too large"
 
 
 class Unauthorized(CaseError):
+    """The request carries no valid key."""
+
     problem_type, status, title = "unauthorized", 401, "A valid key is needed"
 
 
 class RateLimited(CaseError):
+    """This client asks more often than it may."""
+
     problem_type, status, title = "rate-limited", 429, "Too many requests"
 
 
 class NotFound(CaseError):
+    """There is no such resource."""
+
     problem_type, status, title = "not-found", 404, "There is nothing here"

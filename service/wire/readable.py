@@ -1,0 +1,113 @@
+"""An answer for people: the same document as plain text, for a terminal."""
+
+from __future__ import annotations
+
+import textwrap
+from collections.abc import Iterable, Iterator
+from typing import Any
+
+WIDTH = 110
+
+
+def readable(answer: dict[str, Any]) -> str:
+    """The answer document as text: answers, states, ledger, steps, checks, cautions."""
+    parts = [_title(answer), _answers(answer), _states(answer), _ledger(answer), _steps(answer), _checks(answer)]
+    parts += [_texts("Assumptions", answer["assumptions"]), _advisories(answer["advisories"])]
+    return "\n\n".join(part for part in parts if part) + "\n"
+
+
+def _title(answer: dict[str, Any]) -> str:
+    title = f"{answer['title'] or 'Balance'}: {answer['status']}"
+    return f"{title}\n{'=' * len(title)}"
+
+
+def _amount(quantity: dict[str, Any]) -> str:
+    value = quantity.get("value")
+    if value is None:
+        return f"— ({quantity.get('reason', 'not defined')})"
+    text = f"{value:.6g} {quantity['unit']}"
+    return f"{text} ± {quantity['u']:.2g} (standard uncertainty)" if "u" in quantity else text
+
+
+def _answers(answer: dict[str, Any]) -> str:
+    return _section("Answers", _aligned((address, _amount(q)) for address, q in answer["answers"].items()))
+
+
+def _states(answer: dict[str, Any]) -> str:
+    rows = []
+    for stream, state in answer["states"].items():
+        shown = [f"{n} {_amount(q)}" for n, q in state.items() if isinstance(q, dict) and q.get("value") is not None]
+        head = ", ".join(t for t in (state.get("fluid", ""), state.get("phase", "")) if t)
+        rows.append((stream, f"{head}: {', '.join(shown)}"))
+    return _section("Streams", _aligned(rows))
+
+
+def _ledger(answer: dict[str, Any]) -> str:
+    lines: list[str] = []
+    for account in answer["ledger"]:
+        for mass in account.get("mass", ()):
+            label = f" ({mass['circuit']})" if mass.get("circuit") else ""
+            lines += [f"  {account['boundary']}, mass{label}", *_account(mass)]
+        if account.get("energy"):
+            lines += [f"  {account['boundary']}, energy", *_account(account["energy"])]
+    return _section("Ledger, positive into the boundary", lines)
+
+
+def _account(account: dict[str, Any]) -> Iterator[str]:
+    for line in account["lines"]:
+        yield f"    {line['value']:>16,.4f} {line['unit']:8} {line['term']} {line['of']}"
+    total = account["sum"]
+    yield f"    {total['value']:>16,.4f} {total['unit']:8} sum (closure {account['closure']:.1e})"
+
+
+def _steps(answer: dict[str, Any]) -> str:
+    lines: list[str] = []
+    for step in answer.get("steps", ()):
+        lines += _step(step, "  ")
+    return _section("Steps", lines)
+
+
+def _step(step: dict[str, Any], margin: str) -> Iterator[str]:
+    yield f"{margin}{step['number']}. {step['name']} ({step['method']})"
+    yield from _wrapped(step["equation"], margin + "   ")
+    if step.get("numbers"):
+        yield from _wrapped(step["numbers"], margin + "   ")
+    for inner in step.get("inner", ()):
+        yield from _step(inner, margin + "   ")
+
+
+def _checks(answer: dict[str, Any]) -> str:
+    checks = answer["checks"]
+    lines = [f"  second law, {c['boundary']}: {c['verdict']}. {c['why']}" for c in checks["entropy"]]
+    lines += [f"  {c['name']}: {c['verdict']}" for c in checks["surplus"]]
+    return _section("Checks", lines)
+
+
+def _advisories(advisories: dict[str, Any]) -> str:
+    lines: list[str] = []
+    for item in advisories["items"]:
+        lines += _wrapped(f"{item['signal_word']} {item['message']} [{item['basis']}]", "  ")
+    lines += _wrapped(advisories["deference"], "  ")
+    return _section("Cautions", lines)
+
+
+def _texts(title: str, texts: Iterable[str]) -> str:
+    return _section(title, [line for text in texts for line in _wrapped(text, "  ")])
+
+
+def _wrapped(text: str, margin: str) -> list[str]:
+    return textwrap.wrap(text, WIDTH, initial_indent=margin, subsequent_indent=margin + "  ")
+
+
+def _aligned(rows: Iterable[tuple[str, str]]) -> list[str]:
+    pairs = list(rows)
+    widest = max((len(name) for name, _ in pairs), default=0)
+    lines: list[str] = []
+    for name, text in pairs:
+        indent = " " * (widest + 4)
+        lines += textwrap.wrap(text, WIDTH, initial_indent=f"  {name:{widest}}  ", subsequent_indent=indent)
+    return lines
+
+
+def _section(title: str, lines: list[str]) -> str:
+    return "\n".join([title, *lines]) if lines else ""
