@@ -9,8 +9,12 @@ from typing import Any
 import pytest
 from jsonschema import Draft202012Validator
 
+from service.errors import CaseError
+from service.units import KINDS, UnitTable
 from service.wire import vocabulary
+from service.wire.findings import Findings
 from service.wire.library import read_schemas, schema_directory
+from service.wire.quantities import QuantityReader
 from service.wire.shapes import Shape
 
 SCHEMAS = read_schemas(schema_directory())
@@ -163,6 +167,35 @@ def test_a_declared_fluid_has_the_quantities_that_the_code_knows(kind: str) -> N
 )
 def test_the_words_of_a_schema_are_those_of_the_code(place: Mapping[str, Any], words: Any) -> None:
     assert place["enum"] == list(words)
+
+
+def test_every_quantity_of_the_schema_is_a_kind_of_the_unit_table() -> None:
+    general = {"quantity", "quantity_or_number", "any_quantity"}
+    named = {n for n, d in DEFS.items() if d.get("$ref", "").startswith("#/$defs/quantity") and n not in general}
+    assert named <= set(KINDS)
+    kinds = UnitTable.build().kinds
+    bare = {name for name in named if DEFS[name]["$ref"].endswith("_or_number")}
+    assert bare == {name for name in named if kinds[name].bare_number_allowed}
+
+
+def test_the_examples_in_the_schema_are_quantities_of_their_kind() -> None:
+    units, findings = UnitTable.build(), Findings()
+    reader = QuantityReader(units, findings)
+    count = 0
+    for name, definition in DEFS.items():
+        for example in definition.get("examples", ()):
+            assert reader.quantity(example, name, "", "#") is not None, (name, example)
+            count += 1
+    for kind, text in vocabulary.EXAMPLES.items():
+        for example in text.split(" or "):
+            assert reader.quantity(json.loads(example), kind, "", "#") is not None, (kind, example)
+    assert count > 20
+
+
+def test_every_problem_type_of_the_code_is_named_in_the_schema_of_problems() -> None:
+    told = SCHEMAS["problem"]["properties"]["type"]["description"]  # type: ignore[index]
+    types = {error.problem_type for error in CaseError.__subclasses__()}
+    assert {word.strip(" .") for word in told.partition(": ")[2].split(",")} == types
 
 
 def test_every_kind_of_item_leads_to_its_own_branch() -> None:
