@@ -18,9 +18,19 @@ from numpy.typing import NDArray
 
 from service.errors import CaseError, StateAmbiguous, StateOutOfRange
 from service.fluids.protocol import Limits, Provenance, State
+from service.fluids.refusals import KINDS, literal, refusal
 
 Array = NDArray[np.float64]
 Point = tuple[float, ...]
+
+KIND = {
+    **KINDS,
+    "humidity_ratio": "humidity_ratio",
+    "relative_humidity": "dimensionless",
+    "wet_bulb": "temperature",
+    "dew_point": "temperature",
+}
+"""Property -> kind of quantity, for the amounts in messages."""
 
 
 class BasePointFluid:
@@ -135,6 +145,19 @@ class BasePointFluid:
         for name, value in zip(names, values, strict=True):
             if not math.isfinite(value):
                 raise StateOutOfRange(f"{name} of {self.name} is not a finite number.")
+
+    def outside(self, name: str, value: float, low: float, high: float, hint: str = "") -> StateOutOfRange:
+        """The error for a property [SI] beyond its limits."""
+        kind = KIND[name]
+        return refusal(
+            StateOutOfRange,
+            f"{literal(self.name)}: {name} = {{0}} lies outside {{1}} to {{2}}.",
+            (kind, value),
+            (kind, low),
+            (kind, high),
+            hint=hint,
+            of=name,
+        )
 
     def unsupported(self, inputs: Sequence[str]) -> StateAmbiguous:
         """The error for inputs that do not fix a state of this fluid."""

@@ -11,6 +11,7 @@ from collections.abc import Callable, Collection, Mapping, Sequence
 from typing import TYPE_CHECKING
 
 from service.errors import CaseError, StateOutOfRange
+from service.fluids import humid_air_refusals as refuse
 from service.fluids import humid_air_relations as air
 from service.fluids.base_point import BasePointFluid, Point
 from service.fluids.bracketed_root import newton_in_bracket, root_in_bracket
@@ -21,7 +22,7 @@ if TYPE_CHECKING:
 
 T_MIN, T_MAX = 173.15, 623.15  # [K]; the model itself reaches down to 130 K
 P_MIN, P_MAX = 1e3, 1e7  # [Pa]
-_RANGE_OF_T = f"{T_MIN:g} K to {T_MAX:g} K"
+
 ROUNDING = 1e-9  # saturated air may exceed Ws by this part, which is rounding and no fog
 
 W, R, B, D = "humidity_ratio", "relative_humidity", "wet_bulb", "dew_point"
@@ -87,7 +88,7 @@ class HumidAir(BasePointFluid):
             raise self.unsupported(inputs)
         p = given.pop("p")
         if not P_MIN <= p <= P_MAX:
-            raise StateOutOfRange(f"Humid air: p = {p:.6g} Pa lies outside {P_MIN:g} Pa to {P_MAX:g} Pa.")
+            raise self.outside("p", p, P_MIN, P_MAX)
         self._check_given(given)
         T, w = self._find(p, given, inputs)
         self._check(p, T, w)
@@ -96,34 +97,25 @@ class HumidAir(BasePointFluid):
     def _check_given(self, given: Mapping[str, float]) -> None:
         for name in ("T", B, D):
             if name in given and not T_MIN <= given[name] <= T_MAX:
-                raise StateOutOfRange(f"Humid air: {name} = {given[name]:.6g} K lies outside {_RANGE_OF_T}.")
+                raise self.outside(name, given[name], T_MIN, T_MAX)
         if R in given and not 0.0 <= given[R] <= 1.0:
-            raise StateOutOfRange(
-                f"Humid air: {R} = {given[R]:.6g} lies outside 0 to 1.", hint="60 % is 0.6, or write the unit %."
-            )
+            raise self.outside(R, given[R], 0.0, 1.0, hint="60 % is 0.6, or write the unit %.")
         if W in given and not 0.0 <= given[W] <= air.HIGHEST_W:
-            raise StateOutOfRange(f"Humid air: {W} = {given[W]:.6g} lies outside 0 to {air.HIGHEST_W:g} kg/kg.")
-        for name, meaning in ((B, "wet bulb"), (D, "dew point")):
+            raise self.outside(W, given[W], 0.0, air.HIGHEST_W)
+        for name in (B, D):
             if name in given and "T" in given and given[name] > given["T"]:
-                raise StateOutOfRange(
-                    f"Humid air: a {meaning} of {given[name]:.6g} K lies above the temperature of {given['T']:.6g} K.",
-                    hint="Saturated air has all three equal.",
-                )
+                raise refuse.out_of_order(name, given[name], "temperature", given["T"])
         if B in given and D in given and given[D] > given[B]:
-            raise StateOutOfRange("Humid air: a dew point above the wet bulb is impossible.")
+            raise refuse.out_of_order(D, given[D], B, given[B])
 
     def _check(self, p: float, T: float, w: float) -> None:
         if not T_MIN <= T <= T_MAX:
-            raise StateOutOfRange(f"Humid air: T = {T:.6g} K lies outside {_RANGE_OF_T}.")
+            raise self.outside("T", T, T_MIN, T_MAX)
         if not 0.0 <= w <= air.HIGHEST_W:
-            raise StateOutOfRange(f"Humid air: {W} = {w:.6g} lies outside 0 to {air.HIGHEST_W:g} kg/kg.")
+            raise self.outside(W, w, 0.0, air.HIGHEST_W)
         highest = air.saturated(p, T)
         if w > highest * (1.0 + ROUNDING):
-            raise StateOutOfRange(
-                f"Humid air at {T:.6g} K and {p:.6g} Pa holds at most {highest:.6g} kg of water per kg of dry air; "
-                f"{w:.6g} would be fog.",
-                hint="Let the rest leave as a stream of liquid water, or raise the temperature.",
-            )
+            raise refuse.fog(p, T, w, highest)
 
     def _find(self, p: float, given: dict[str, float], inputs: Sequence[str]) -> tuple[float, float]:
         if D in given:
@@ -153,7 +145,7 @@ class HumidAir(BasePointFluid):
     def _of_dew_point(self, p: float, dew_point: float) -> float:
         w = air.saturated(p, dew_point)
         if w == math.inf:
-            raise StateOutOfRange(f"Humid air: a dew point of {dew_point:.6g} K at {p:.6g} Pa is more water than air.")
+            raise refuse.more_water_than_air(p, D, dew_point, dew_point)
         return w
 
     def _humidity(self, p: float, T: float, name: str, value: float, inputs: Sequence[str]) -> float:
@@ -163,28 +155,19 @@ class HumidAir(BasePointFluid):
         if name == R:
             w = air.at_relative_humidity(p, T, value)
             if w == math.inf:
-                raise StateOutOfRange(
-                    f"Humid air: a relative humidity of {value:.6g} at {T:.6g} K and {p:.6g} Pa means more than "
-                    f"{air.HIGHEST_W:g} kg of water per kg of dry air."
-                )
+                raise refuse.more_water_than_air(p, R, value, T)
             return w
         if name == B:
             w = air.humidity_of_wet_bulb(p, T, value)
             if w < 0.0:
-                raise StateOutOfRange(
-                    f"Humid air: at {T:.6g} K and {p:.6g} Pa even dry air has a wet bulb above {value:.6g} K.",
-                    hint="Raise the wet bulb or lower the temperature.",
-                )
+                raise refuse.too_dry(p, T, value)
             return w
         highest = min(air.saturated(p, T), air.HIGHEST_W)
         if name in ("h", "s", "rho"):
             found = self._humidity_where(p, T, name, value, highest)
             if found is None:
                 ends = sorted(self._one(name, p, T, w) for w in (0.0, highest))
-                raise StateOutOfRange(
-                    f"Humid air: at {T:.6g} K and {p:.6g} Pa {name} lies between {ends[0]:.6g} (dry) and {ends[1]:.6g} "
-                    f"(saturated) [SI, per kg of dry air], not at {value:.6g}."
-                )
+                raise refuse.between_dry_and_saturated(p, T, name, value, ends)
             return found
         raise self.unsupported(inputs)
 
@@ -229,10 +212,7 @@ class HumidAir(BasePointFluid):
         else:
             raise self.unsupported(inputs)
         if found is None:
-            raise StateOutOfRange(
-                f"Humid air: no temperature between {lowest:.6g} K (dew point) and {T_MAX:g} K has "
-                f"{name} = {value:.6g} [SI] with {W} = {w:.6g}."
-            )
+            raise refuse.nowhere(p, (W, w), name, lowest, T_MAX)
         return found
 
     def _caloric_temperature(self, p: float, w: float, name: str, value: float, lowest: float) -> float:
@@ -245,14 +225,7 @@ class HumidAir(BasePointFluid):
         low, high = max(lowest * (1.0 - 1e-9), T_MIN), T_MAX
         at_low, at_high = residual(low)[0], residual(high)[0]
         if at_low > 0.0 or at_high < 0.0:
-            edge = "where it is saturated" if lowest > T_MIN else "at the lower limit"
-            raise StateOutOfRange(
-                f"Humid air with {W} = {w:.6g} at {p:.6g} Pa: {name} = {value:.6g} lies outside {value + at_low:.6g} "
-                f"({edge}, {lowest:.6g} K) to {value + at_high:.6g} ({T_MAX:g} K) [SI, per kg of dry air].",
-                hint="Below saturation water condenses: let it leave as a stream of liquid water."
-                if at_low > 0.0
-                else "",
-            )
+            raise refuse.beyond(p, w, name, (value, value + at_low, value + at_high), (lowest, T_MAX))
         start = low - at_low / residual(low)[1]
         return newton_in_bracket(residual, low, high, start, scale=at_high - at_low, exact=False)
 
@@ -273,10 +246,7 @@ class HumidAir(BasePointFluid):
 
         T = root_in_bracket(function, low, high) if low < high else None
         if T is None:
-            raise StateOutOfRange(
-                f"Humid air: no temperature between {low:.6g} K and {high:.6g} K has this {name} at a relative "
-                f"humidity of {r:.6g} and {p:.6g} Pa."
-            )
+            raise refuse.nowhere(p, (R, r), name, low, high)
         return T, air.at_relative_humidity(p, T, r)
 
     def _of_wet_bulb_and_enthalpy(self, p: float, b: float, h: float) -> tuple[float, float]:
@@ -287,14 +257,11 @@ class HumidAir(BasePointFluid):
             )
         highest = air.saturated(p, b)
         if highest == math.inf:
-            raise StateOutOfRange(f"The humid-air model does not cover a wet bulb of {b:.6g} K at p = {p:.6g} Pa.")
+            raise refuse.not_covered(p, b, B)
         h_water = air.liquid_water(p, b)
         w = highest + (h - air.enthalpy(p, b, highest)) / h_water if h_water > 1.0 else -1.0
         if not 0.0 <= w <= highest * (1.0 + ROUNDING):
-            raise StateOutOfRange(
-                f"Humid air: h = {h:.6g} J/kg and a wet bulb of {b:.6g} K do not belong together.",
-                hint="Enthalpy and wet bulb say nearly the same: give T or relative_humidity instead of one of them.",
-            )
+            raise refuse.wet_bulb_with_enthalpy(h, b)
         return self._temperature(p, w, "h", h, (B, "h")), w
 
     # --- evaluating ----------------------------------------------------------------------------------------------

@@ -28,6 +28,7 @@ import CoolProp.CoolProp as CoolPropLibrary
 
 from service.errors import StateOutOfRange
 from service.fluids.bracketed_root import newton_in_bracket, root_in_bracket
+from service.fluids.humid_air_refusals import not_covered
 from service.fluids.ideal_part import ideal_part
 
 GAS_CONSTANT = 8.314472  # [J/(mol K)] that of the humid-air model
@@ -49,9 +50,9 @@ def library(output: str, T: float, p: float, name: str, value: float) -> float:
     try:
         found = float(CoolPropLibrary.HAPropsSI(output, "T", T, "P", p, name, value))
     except ValueError as exc:
-        raise StateOutOfRange(f"The humid-air model does not cover T = {T:.6g} K at p = {p:.6g} Pa.") from exc
+        raise not_covered(p, T) from exc
     if not math.isfinite(found):
-        raise StateOutOfRange(f"The humid-air model has no finite state at T = {T:.6g} K and p = {p:.6g} Pa.")
+        raise not_covered(p, T)
     return found
 
 
@@ -233,7 +234,7 @@ def humidity_of_wet_bulb(p: float, T: float, B: float) -> float:
     """W [kg/kg] of air of T [K] and wet bulb B [K]; negative where even dry air has a higher wet bulb."""
     Ws = saturated(p, B)
     if Ws == math.inf:
-        raise StateOutOfRange(f"The humid-air model does not cover a wet bulb of {B:.6g} K at p = {p:.6g} Pa.")
+        raise not_covered(p, B, "wet_bulb")
     if B >= T:
         return Ws
     if B < T_TRIPLE:

@@ -20,6 +20,7 @@ from service.fluids.base_point import Array, BasePointFluid, Point
 from service.fluids.bracketed_root import newton_in_bracket
 from service.fluids.ideal_part import MOLAR_GAS_CONSTANT, ideal_part
 from service.fluids.protocol import Limits, Provenance
+from service.fluids.refusals import literal, refusal
 
 PAIRS = (
     ("p", "T"), ("p", "h"), ("p", "s"), ("p", "u"), ("p", "rho"), ("p", "v"),
@@ -162,11 +163,15 @@ class IdealGasMixture(BasePointFluid):
 
         at_low, at_high = residual(low)[0], residual(high)[0]
         if at_low > 0.0 or at_high < 0.0:
-            raise StateOutOfRange(
-                f"{self.name}: {name.split('_')[0]} belongs to a temperature outside {low:.6g} K to {high:.6g} K.",
-                hint="Is the enthalpy counted from the same zero? It is that of the pure components."
-                if name in ("h", "u")
-                else "",
+            zero = "Is the enthalpy counted from the same zero? It is that of the pure components."
+            name = name.split("_")[0]
+            raise refusal(
+                StateOutOfRange,
+                f"{literal(self.name)}: {name} belongs to a temperature outside {{0}} to {{1}}.",
+                ("T", low),
+                ("T", high),
+                hint=zero if name in ("h", "u") else "",
+                of=name,
             )
         start = low + (high - low) * at_low / (at_low - at_high)
         return newton_in_bracket(residual, low, high, start, scale=at_high - at_low)
@@ -179,13 +184,9 @@ class IdealGasMixture(BasePointFluid):
     def _check(self, p: float, T: float) -> None:
         limits = self.limits
         if not limits.T_min <= T <= limits.T_max:
-            raise StateOutOfRange(
-                f"{self.name}: T = {T:.6g} K lies outside {limits.T_min:.6g} K to {limits.T_max:.6g} K."
-            )
+            raise self.outside("T", T, limits.T_min, limits.T_max)
         if not LOWEST_PRESSURE <= p <= HIGHEST_PRESSURE:
-            raise StateOutOfRange(
-                f"{self.name}: p = {p:.6g} Pa lies outside {LOWEST_PRESSURE:g} Pa to {HIGHEST_PRESSURE:g} Pa."
-            )
+            raise self.outside("p", p, LOWEST_PRESSURE, HIGHEST_PRESSURE)
 
     def evaluate(self, point: Point, wanted: Collection[str]) -> dict[str, float]:
         """Properties [SI] at (p, T); kappa [-] is cp/cv."""

@@ -19,6 +19,7 @@ from service.fluids import incompressible_names
 from service.fluids.base_point import BasePointFluid, Point
 from service.fluids.bracketed_root import newton_in_bracket, root_in_bracket
 from service.fluids.protocol import Limits, Provenance
+from service.fluids.refusals import literal, refusal
 
 if TYPE_CHECKING:
     from service.fluids.protocol import FluidSpec
@@ -151,22 +152,25 @@ class IncompressibleLiquid(BasePointFluid):
 
     def _check_pressure(self, p: float) -> None:
         if not LOWEST_PRESSURE <= p <= HIGHEST_PRESSURE:
-            raise StateOutOfRange(
-                f"{self.name}: p = {p:.6g} Pa lies outside {LOWEST_PRESSURE:g} Pa to {HIGHEST_PRESSURE:g} Pa.",
-            )
+            raise self.outside("p", p, LOWEST_PRESSURE, HIGHEST_PRESSURE)
 
     def _check_temperature(self, p: float, T: float) -> None:
         limits = self.limits
         if not limits.T_min <= T <= limits.T_max:
-            raise StateOutOfRange(
-                f"{self.name}: T = {T:.6g} K lies outside {limits.T_min:.6g} K to {limits.T_max:.6g} K.",
-                hint="The lower end is the freezing point where the mixture's is known.",
+            hint = (
+                "The lower end is the freezing point, where that is known." if self._mass_fraction is not None else ""
             )
+            raise self.outside("T", T, limits.T_min, limits.T_max, hint)
         boiling = self._vapour_pressure(T) if self._boils else None
         if boiling is not None and p < boiling:
-            raise StateOutOfRange(
-                f"{self.name} would boil: at {T:.6g} K its vapour pressure is {boiling:.6g} Pa, above p = {p:.6g} Pa.",
+            raise refusal(
+                StateOutOfRange,
+                f"{literal(self.name)} would boil: at {{0}} its vapour pressure is {{1}}, above the pressure of {{2}}.",
+                ("T", T),
+                ("p", boiling),
+                ("p", p),
                 hint="The model covers the liquid only: raise the pressure or lower the temperature.",
+                of="p",
             )
 
     def _temperature_of(self, p: float, name: str, value: float) -> float:
@@ -181,10 +185,8 @@ class IncompressibleLiquid(BasePointFluid):
 
         at_low, at_high = residual(low)[0], residual(high)[0]
         if at_low > 0.0 or at_high < 0.0:
-            raise StateOutOfRange(
-                f"{self.name}: {name} = {value:.6g} lies outside {value + at_low:.6g} to {value + at_high:.6g} [SI] "
-                f"at p = {p:.6g} Pa ({low:.6g} K to {high:.6g} K)."
-            )
+            hint = "Enthalpy and entropy are counted from 20 degC." if name != "u" else ""
+            raise self.outside(name, value, value + at_low, value + at_high, hint)
         guess = low + (high - low) * (-at_low) / (at_high - at_low)
         return newton_in_bracket(residual, low, high, guess, scale=max(abs(value), at_high - at_low))
 
@@ -195,10 +197,8 @@ class IncompressibleLiquid(BasePointFluid):
         T = root_in_bracket(lambda t: self._at(handle, p, t, top)["rho"] - rho, low, high)
         if T is None:
             ends = [self._at(handle, p, t, top)["rho"] for t in (low, high)]
-            raise StateOutOfRange(
-                f"{self.name}: rho = {rho:.6g} kg/m3 lies outside {min(ends):.6g} to {max(ends):.6g} kg/m3.",
-                hint="The density of a liquid says little of its temperature: give T instead.",
-            )
+            hint = "The density of a liquid says little of its temperature: give T instead."
+            raise self.outside("rho", rho, min(ends), max(ends), hint)
         return T
 
     def _at(self, handle: Any, p: float, T: float, at: float) -> dict[str, float]:
@@ -218,17 +218,20 @@ class IncompressibleLiquid(BasePointFluid):
         try:
             handle.update(CoolProp.PT_INPUTS, p, T)
         except ValueError as exc:
-            raise StateOutOfRange(f"{self.name} has no state at p = {p:.6g} Pa and T = {T:.6g} K.") from exc
+            raise self._no_state(p, T) from exc
         rho, h = handle.rhomass(), handle.hmass()
         found = {"p": p, "T": T, "h": h, "s": handle.smass(), "u": h - p / rho, "rho": rho, "v": 1.0 / rho}
         found["cp"] = handle.cpmass()
         if not all(map(math.isfinite, found.values())):
-            raise StateOutOfRange(f"{self.name} has no finite state at p = {p:.6g} Pa and T = {T:.6g} K.")
+            raise self._no_state(p, T)
         found["x"] = math.nan
         for name in wanted:
             if name not in found:
                 found[name] = self._extra(handle, name)
         return found
+
+    def _no_state(self, p: float, T: float) -> StateOutOfRange:
+        return refusal(StateOutOfRange, f"{literal(self.name)} has no state at {{0}} and {{1}}.", ("p", p), ("T", T))
 
     def _extra(self, handle: Any, name: str) -> float:
         if name not in self.extras or not self._transport:

@@ -20,6 +20,7 @@ from service.fluids.bracketed_root import newton_in_bracket, root_in_bracket
 from service.fluids.dew_curve import DewCurve
 from service.fluids.ideal_mixture import PAIRS, REFERENCE, IdealGasMixture, name_of
 from service.fluids.protocol import Limits, Provenance
+from service.fluids.refusals import literal, refusal
 
 LOWEST_PRESSURE, HIGHEST_PRESSURE = 100.0, 3.5e7  # [Pa]; 35 MPa is the normal range of the mixture model
 CITATION = (
@@ -186,10 +187,14 @@ class RealGasMixture(BasePointFluid):
 
         at_low, at_high = residual(low)[0], residual(high)[0]
         if at_low > 0.0:
-            raise self._would_condense(p, None, f"{name} = {value:.6g}")
+            raise self._would_condense(p, None, name, value)
         if at_high < 0.0:
-            raise StateOutOfRange(
-                f"{self.name}: {name} = {value:.6g} [SI] belongs to a temperature above {high:.6g} K."
+            raise refusal(
+                StateOutOfRange,
+                f"{literal(self.name)}: {name} = {{0}} belongs to a temperature above {{1}}.",
+                (name, value),
+                ("T", high),
+                of=name,
             )
         try:
             start = self._ideal.point(tuple(given), tuple(given.values()))[1]
@@ -208,8 +213,12 @@ class RealGasMixture(BasePointFluid):
 
         T = root_in_bracket(residual, max(self.limits.T_min, 50.0), self.limits.T_max)
         if T is None:
-            raise StateOutOfRange(
-                f"{self.name} has no gaseous state with rho = {given['rho']:.6g} and this {name} [SI]."
+            raise refusal(
+                StateOutOfRange,
+                f"{literal(self.name)} has no gaseous state with rho = {{0}} and {name} = {{1}}.",
+                ("rho", given["rho"]),
+                (name, given[name]),
+                of=name,
             )
         return T
 
@@ -226,10 +235,15 @@ class RealGasMixture(BasePointFluid):
         highest = self._highest_pressure(T)
         found = root_in_bracket(residual, math.log(LOWEST_PRESSURE), math.log(highest))
         if found is None:
-            raise StateOutOfRange(
-                f"{self.name}: at T = {T:.6g} K no pressure between {LOWEST_PRESSURE:g} Pa and {highest:.6g} Pa "
-                f"has {name} = {given[name]:.6g} [SI].",
+            raise refusal(
+                StateOutOfRange,
+                f"{literal(self.name)}: at {{0}} no pressure between {{1}} and {{2}} has {name} = {{3}}.",
+                ("T", T),
+                ("p", LOWEST_PRESSURE),
+                ("p", highest),
+                (name, given[name]),
                 hint=f"{name} hardly depends on the pressure: give p instead." if name != "s" else "",
+                of=name,
             )
         return math.exp(found)
 
@@ -307,25 +321,26 @@ class RealGasMixture(BasePointFluid):
         self._check_temperature(T)
         dew = self._dew.condenses(p, T)
         if dew is not None:
-            raise self._would_condense(p, dew, f"T = {T:.6g} K")
+            raise self._would_condense(p, dew, "T", T)
 
     def _check_pressure(self, p: float) -> None:
         if not LOWEST_PRESSURE <= p <= HIGHEST_PRESSURE:
-            raise StateOutOfRange(
-                f"{self.name}: p = {p:.6g} Pa lies outside {LOWEST_PRESSURE:g} Pa to {HIGHEST_PRESSURE:g} Pa."
-            )
+            raise self.outside("p", p, LOWEST_PRESSURE, HIGHEST_PRESSURE)
 
     def _check_temperature(self, T: float) -> None:
         limits = self.limits
         if not limits.T_min <= T <= limits.T_max:
-            raise StateOutOfRange(
-                f"{self.name}: T = {T:.6g} K lies outside {limits.T_min:.6g} K to {limits.T_max:.6g} K."
-            )
+            raise self.outside("T", T, limits.T_min, limits.T_max)
 
-    def _would_condense(self, p: float, dew: float | None, given: str) -> StateOutOfRange:
+    def _would_condense(self, p: float, dew: float | None, name: str, value: float) -> StateOutOfRange:
         dew = self._dew.exact(p) if dew is None else dew
-        return StateOutOfRange(
-            f"{self.name} would condense: at p = {p:.6g} Pa its dew point is {dew:.6g} K, above what {given} needs.",
+        return refusal(
+            StateOutOfRange,
+            f"{literal(self.name)} would condense: at {{0}} its dew point is {{1}}, and {name} = {{2}} lies below.",
+            ("p", p),
+            ("T", dew),
+            (name, value),
+            of=name,
             hint="The model covers the gas only: raise the temperature, lower the pressure, "
             'or take the model "ideal_gas" where no condensate is expected.',
         )
@@ -344,7 +359,7 @@ class RealGasMixture(BasePointFluid):
             cv = handle.cvmass()
             found.update(cv=cv, kappa=cp / cv, speed_of_sound=handle.speed_sound())
         if not all(map(math.isfinite, found.values())) or rho <= 0.0:
-            raise StateOutOfRange(f"{self.name} has no finite state at p = {p:.6g} Pa and T = {T:.6g} K.")
+            raise refusal(StateOutOfRange, f"{literal(self.name)} has no state at {{0}} and {{1}}.", ("p", p), ("T", T))
         found["x"] = math.nan
         return found
 
