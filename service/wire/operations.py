@@ -49,7 +49,7 @@ class Operations:
         self._schemas = schemas
         self._examples = examples
         self._time_budget = time_budget
-        self._case_shape = Shape("case", schemas)
+        self.case_shape = Shape("case", schemas)
         self._series_shape = Shape("series-request", schemas)
         self._states_shape = Shape("states-request", schemas)
 
@@ -90,7 +90,7 @@ class Operations:
         }
 
     def _parse(self, document: Any) -> tuple[Case, Presenter]:
-        case = parse_case(document, self._case_shape, self.unit_table)
+        case = parse_case(document, self.case_shape, self.unit_table)
         return case, Presenter(self.unit_table, case.answer.units, case.site.atmospheric_pressure)
 
     def _deadline(self) -> float | None:
