@@ -19,6 +19,7 @@ import numpy as np
 from service.errors import CaseError, NotConverged, StateAmbiguous, StateOutOfRange
 from service.fluids.citations import citation
 from service.fluids.columns import as_columns, by_rows, first_of_each, spread
+from service.fluids.handles import Handle
 from service.fluids.helmholtz_columns import Flags, run
 from service.fluids.helmholtz_limits import Range, measure, melting_pressure, melting_temperature
 from service.fluids.helmholtz_slopes import boiling_slope, single_phase_slopes, two_phase_slopes
@@ -59,18 +60,6 @@ METHODS = {
     "conductivity": "conductivity",
 }  # fmt: skip
 IN_COLUMNS = frozenset((*BASIC, "cp", "cv", "speed_of_sound"))
-
-
-class Handle:
-    """One thread's state object of the library, with its methods at hand."""
-
-    __slots__ = ("Q", "T", "backend", "h", "p", "rho", "s", "u", "update")
-
-    def __init__(self, backend: Any) -> None:
-        self.backend = backend
-        self.update = backend.update
-        self.p, self.T, self.Q = backend.p, backend.T, backend.Q
-        self.h, self.s, self.u, self.rho = backend.hmass, backend.smass, backend.umass, backend.rhomass
 
 
 class Route:

@@ -12,7 +12,7 @@ from typing import Any
 import CoolProp
 import CoolProp.CoolProp as CoolPropLibrary
 
-from service.fluids.slopes import Slope
+from service.fluids.slopes import Slope, wet_by_differences
 
 KEYS = {
     "p": CoolPropLibrary.iP, "T": CoolPropLibrary.iT, "h": CoolPropLibrary.iHmass, "s": CoolPropLibrary.iSmass,
@@ -48,7 +48,7 @@ def boiling_slope(backend: Any, p: float, x: float) -> float:
 def two_phase_slopes(backend: Any, p: float, x: float, names: Collection[str], blend: bool) -> dict[str, Slope]:
     """d(name)/d(p, x) of the wet state at p [Pa], x [-]. A blend, whose temperature glides, by differences over p."""
     if blend:
-        return _by_differences(backend, p, x, names)
+        return wet_by_differences(lambda at_p, at_x: _values(backend, at_p, at_x), p, x, names)
     liquid, vapour = _saturated(backend, p, 0.0), _saturated(backend, p, 1.0)
     out: dict[str, Slope] = {"p": (1.0, 0.0), "x": (0.0, 1.0)}
     for name in ("T", "h", "s", "u", "v"):
@@ -77,14 +77,6 @@ def _saturated(backend: Any, p: float, x: float) -> Mapping[str, tuple[float, fl
     }
 
 
-def _by_differences(backend: Any, p: float, x: float, names: Collection[str]) -> dict[str, Slope]:
-    step, step_x = 1e-5 * p, 1e-5
-    low, high = max(x - step_x, 0.0), min(x + step_x, 1.0)
-    by_p = _difference(_values(backend, p - step, x), _values(backend, p + step, x), 2.0 * step)
-    by_x = _difference(_values(backend, p, low), _values(backend, p, high), high - low)
-    return {name: (by_p[name], by_x[name]) for name in {*names, "p", "x"}}
-
-
 def _values(backend: Any, p: float, x: float) -> dict[str, float]:
     backend.update(CoolProp.PQ_INPUTS, p, x)
     rho = backend.rhomass()
@@ -92,7 +84,3 @@ def _values(backend: Any, p: float, x: float) -> dict[str, float]:
         "p": p, "x": x, "T": backend.T(), "h": backend.hmass(), "s": backend.smass(), "u": backend.umass(),
         "rho": rho, "v": 1.0 / rho,
     }  # fmt: skip
-
-
-def _difference(below: Mapping[str, float], above: Mapping[str, float], width: float) -> dict[str, float]:
-    return {name: (above[name] - below[name]) / width for name in below}

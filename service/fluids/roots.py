@@ -135,7 +135,7 @@ def _along_isotherm(
     def function(log_p: float) -> float:
         return _residual(fluid, name, y, min(max(math.exp(log_p), low), high), T, side)
 
-    steps = 24
+    steps = 1 if name == "rho" else 24  # rho rises with p throughout
     start, end = math.log(low), math.log(high)
     try:
         before, at_before = start, function(start)

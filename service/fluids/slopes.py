@@ -6,7 +6,7 @@ d(of)/d(inputs) = J(of) J(inputs)^-1,  J(y) = dy/d(base), two base coordinates
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Collection, Mapping, Sequence
 
 from service.errors import StateAmbiguous
 
@@ -30,3 +30,16 @@ def combine(
         y1, y2 = slopes[wanted]
         out[wanted] = ((y1 * b2 - y2 * b1) / determinant, (y2 * a1 - y1 * a2) / determinant)
     return out
+
+
+def wet_by_differences(
+    values: Callable[[float, float], Mapping[str, float]], p: float, x: float, names: Collection[str]
+) -> dict[str, Slope]:
+    """d(name)/d(p, x) of a wet state at p [Pa], x [-] by central differences, one-sided at x = 0 and x = 1."""
+    step = 1e-5 * p
+    low, high = max(x - 1e-3, 0.0), min(x + 1e-3, 1.0)
+    below, above, dry, moist = values(p - step, x), values(p + step, x), values(p, high), values(p, low)
+    out = {
+        name: ((above[name] - below[name]) / (2.0 * step), (dry[name] - moist[name]) / (high - low)) for name in names
+    }
+    return out | {"p": (1.0, 0.0), "x": (0.0, 1.0)}
