@@ -6,7 +6,7 @@ from collections.abc import Collection, Mapping
 from dataclasses import dataclass, field
 
 from service.engine.model import Column, Show
-from service.errors import CaseError
+from service.errors import CaseError, Issue
 from service.fluids.protocol import Fluid
 
 
@@ -46,8 +46,12 @@ class StateNode:
 
     def _of_owner(self, error: CaseError, inputs: tuple[str, ...]) -> CaseError:
         """The same error, saying whose state it is."""
-        hint = error.issues[0].hint if error.issues else ""
-        return type(error)(f"The {self.name}: {error.detail}", address=f"{self.owner}.{inputs[0]}", hint=hint)
+        about = f"The {self.name}: "
+        issues = [
+            Issue(f"{about}{i.detail}", f"{self.owner}.{i.address or inputs[0]}", i.hint, amounts=i.amounts)
+            for i in error.issues or (Issue(error.detail),)
+        ]
+        return type(error)(f"{about}{error.detail}", issues)
 
     def evaluate_columns(
         self, inputs: tuple[str, ...], values: tuple[Column, ...], wanted: tuple[str, ...]

@@ -13,6 +13,7 @@ from service.errors import CaseError, Contradictory, Issue, SchemaViolation, Und
 from service.fluids.catalogue import FluidCatalogue
 from service.fluids.protocol import Fluid, FluidSpec, Limits, State
 from service.units import UnitTable
+from service.wire.addresses import AddressBook
 from service.wire.building import CaseBuilder
 from service.wire.findings import Findings
 from service.wire.pointers import token
@@ -20,6 +21,7 @@ from service.wire.presenting import NO_MEANING, SINGLE_PHASE, Presenter
 from service.wire.provenance import provenance
 from service.wire.shapes import Shape, pruned, report
 from service.wire.suggest import listed
+from service.wire.telling import amounts_shown
 from service.wire.vocabulary import DERIVED_STATE, SATURATED, STATE
 
 ASKED = ("superheat", "subcooling")
@@ -184,7 +186,7 @@ def _placed(error: CaseError, given: Mapping[str, Quantity], presenter: Presente
     for issue in error.issues or (Issue(error.detail),):
         name = issue.address.rpartition(".")[2]
         place = given[name].pointer if name in given else "#/state"
-        detail = issue.told(presenter.text)
+        detail = issue.told(amounts_shown(AddressBook(None), presenter))
         issues.append(Issue(detail, issue.address, issue.hint, issue.pointer or place))
     return type(error)(issues[0].detail if len(issues) == 1 else error.detail, issues)
 

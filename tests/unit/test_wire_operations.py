@@ -13,15 +13,20 @@ from referencing import Registry, Resource
 from service.errors import (
     CaseError,
     Contradictory,
+    Issue,
+    NoSolution,
     NotFound,
     SchemaViolation,
     StateOutOfRange,
     UnderSpecified,
     UnknownFluid,
 )
+from service.wire.addresses import AddressBook
 from service.wire.library import read_examples, read_schemas, schema_directory
 from service.wire.operations import Operations
 from service.wire.pointers import resolve
+from service.wire.presenting import Presenter
+from service.wire.telling import told
 
 from .recompute import in_unit, recompute_steps, recomputed
 from .wire_helpers import issues, let_down, table
@@ -144,6 +149,33 @@ def test_a_temperature_below_the_triple_point_is_out_of_range() -> None:
     error = refused(operations().solve, document)
     assert isinstance(error, StateOutOfRange)
     assert any(place.startswith("#/streams/0/state") for place in issues(error))
+
+
+def test_a_state_out_of_range_is_told_in_the_units_of_the_case_at_the_property_that_is_wrong() -> None:
+    document = {**let_down(), "answer": {"units": "US"}}
+    document["streams"][0]["state"]["T"] = "3000 degC"
+    told = issues(refused(operations().solve, document))
+    assert "5432 degF" in told["#/streams/0/state/T"]  # 3000 degC
+
+
+def test_a_case_without_a_solution_tells_its_nearest_miss_in_units() -> None:
+    document = pump()
+    del document["transfers"][0]["rate"]
+    document["transfers"][0]["rate"] = "1 kW"  # less than the ideal pump needs: 3.9 kW
+    document["relations"] = []
+    document["streams"][1]["state"] = {"p": "9 bar", "T": {"unknown": True, "between": ["200 degC", "300 degC"]}}
+    error = refused(operations().solve, document)
+    assert isinstance(error, NoSolution)
+    assert "degC" in " ".join(issues(error).values())
+
+
+def test_an_amount_told_by_an_address_is_shown_in_the_unit_of_its_kind() -> None:
+    issue = Issue("The nearest misses are {0}, {1} and {2}.", "outlet.T", amounts=(
+        ("outlet.T", 300.0), ("eff.hot_out_limit_h", 1000.0), ("pressure", 1e5),
+    ))  # fmt: skip
+    error = told(NoSolution("none", [issue]), AddressBook(let_down()), Presenter(table()))
+    assert error.issues[0].detail == "The nearest misses are 26.85 degC, 1 kJ/kg and 1 bar."
+    assert error.issues[0].pointer == "#/streams/1/state/T"
 
 
 def test_a_state_is_told_whole() -> None:
