@@ -92,6 +92,10 @@ class HumidAir(BasePointFluid):
         self._check_given(given)
         T, w = self._find(p, given, inputs)
         self._check(p, T, w)
+        ice_bulb = dict(zip(inputs, values, strict=True)).get(B, math.inf)
+        if ice_bulb < min(T, air.T_TRIPLE) and not abs(air.wet_bulb(p, T, w) - ice_bulb) < 1e-6 * ice_bulb:
+            # the wet bulb jumps where ice gives way to water: no air has one in between
+            raise refuse.not_covered(p, ice_bulb, B)
         return p, T, w
 
     def _check_given(self, given: Mapping[str, float]) -> None:

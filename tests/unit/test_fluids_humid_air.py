@@ -171,6 +171,19 @@ def test_impossible_air_is_refused_in_words(inputs, values, says):
         AIR.state(inputs, values)
 
 
+def test_no_air_is_invented_in_the_jump_of_the_wet_bulb_between_ice_and_water():
+    """Over ice the bulb ends at 0.01 degC; every wet bulb just below it must come back from the state it leads to."""
+    refused = 0
+    for b in np.linspace(272.5, 273.159, 12).tolist():
+        try:
+            state = AIR.state(("p", "humidity_ratio", "wet_bulb"), (ATMOSPHERE, 0.002, b)).values
+        except StateOutOfRange:
+            refused += 1
+            continue
+        assert at(ATMOSPHERE, state["T"], 0.002)["wet_bulb"] == pytest.approx(b, rel=1e-6)
+    assert 0 < refused < 12
+
+
 def test_inputs_that_say_the_same_twice_are_not_accepted():
     assert AIR.inputs({"p", "humidity_ratio", "dew_point"}) is None
     with pytest.raises(StateAmbiguous, match="do not fix a state"):
