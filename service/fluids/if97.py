@@ -166,9 +166,7 @@ class IF97Water(TwoPhaseFluid):
         slope = handle.backend.cpmass
         for _ in range(12):
             if boiling is not None and abs(T - boiling) <= ON_THE_LINE * T:
-                found = self._p_x(p, 0.0 if y < liquid else 1.0)
-                found["x"] = math.nan
-                return found
+                return self._next_to_boiling(p, name, y, liquid, vapour)
             update(CoolProp.PT_INPUTS, p, T)
             rate = slope() if name == "h" else slope() / T
             step = (y - read()) / rate
@@ -192,7 +190,18 @@ class IF97Water(TwoPhaseFluid):
             T = float(handle.T())
         except (ValueError, IndexError):  # region 5 has none
             T = 1500.0
-        return min(max(T, coldest), hottest)
+        inset = 1e-6 * (hottest - coldest)
+        return min(max(T, coldest + inset), hottest - inset)
+
+    def _next_to_boiling(self, p: float, name: str, y: float, liquid: float, vapour: float) -> Values:
+        """A state too near to the line for a flash on (p, T): that on the line, where it is near enough."""
+        low, high = SPANS[name]
+        edge, x = (liquid, 0.0) if y < liquid else (vapour, 1.0)
+        if abs(y - edge) > 1e-6 * (high - low):
+            return self._by_bracket(p, name, y)
+        found = self._p_x(p, x)
+        found["x"] = math.nan
+        return found
 
     def _by_bracket(self, p: float, name: str, y: float) -> Values:
         try:

@@ -18,6 +18,8 @@ from service.fluids.refusals import literal, refusal
 if TYPE_CHECKING:
     from service.fluids.two_phase_fluid import TwoPhaseFluid
 
+SETTLED = 1e-6  # a residual of this part of the fluid's span of the property is zero
+
 Found = tuple[tuple[str, str], tuple[float, float]]
 Function = Callable[[float], float]
 
@@ -25,9 +27,12 @@ LOWEST_PRESSURE = 1e-3  # [Pa] searches over pressure start here: a gas is ideal
 _AT_EDGE = 1e-10  # how near to an end of a branch counts as its end, relative to the fluid's span of the property
 
 
-def root(function: Function, low: float, at_low: float, high: float, at_high: float) -> float | None:
+def root(
+    function: Function, low: float, at_low: float, high: float, at_high: float, scale: float = math.inf
+) -> float | None:
     """x in [low, high] where the function is zero, None where it has one sign at both ends (whose values are given).
 
+    scale: size of the function; a jump over zero that leaves more than a millionth of it is no root.
     R. P. Brent's method, as scipy has it.
     """
     if at_low == 0.0:
@@ -38,9 +43,10 @@ def root(function: Function, low: float, at_low: float, high: float, at_high: fl
         return None
     known = {low: at_low, high: at_high}
     try:
-        return float(brentq(lambda x: known[x] if x in known else function(x), low, high, xtol=1e-300, rtol=1e-14))
+        x = float(brentq(lambda x: known[x] if x in known else function(x), low, high, xtol=1e-300, rtol=1e-14))
     except (RuntimeError, ValueError) as exc:
         raise NotConverged("A property of state did not converge.") from exc
+    return x if scale == math.inf or abs(function(x)) <= SETTLED * scale else None
 
 
 def _value(fluid: TwoPhaseFluid, inputs: tuple[str, str], a: float, b: float, name: str) -> float:
@@ -58,6 +64,11 @@ def _residual(fluid: TwoPhaseFluid, name: str, y: float, p: float, T: float, sid
 def _span(fluid: TwoPhaseFluid, name: str) -> float:
     low, high = fluid.spans[name]
     return high - low
+
+
+def _pressure(fluid: TwoPhaseFluid, log_p: float) -> float:
+    """exp(log_p), which rounding must not carry over the limits."""
+    return min(max(math.exp(log_p), fluid.limits.p_min), fluid.limits.p_max)
 
 
 def _none(fluid: TwoPhaseFluid, at: str, value: float, name: str, y: float, reach: Sequence[float]) -> StateOutOfRange:
@@ -94,7 +105,7 @@ def at_pressure(fluid: TwoPhaseFluid, name: str, p: float, y: float) -> Found:
 
         ends = (function(low), function(high))
         reach += [end + y for end in ends]
-        T = root(function, low, ends[0], high, ends[1])
+        T = root(function, low, ends[0], high, ends[1], _span(fluid, name))
         if T is not None:
             return ("p", "T"), (p, T)
     raise _none(fluid, "p", p, name, y, reach)
@@ -152,7 +163,7 @@ def _along_isotherm(
                     f"T and {name} do not fix the pressure: {fluid.name} is nearly an ideal gas there.",
                     hint="Give p in place of one of them.",
                 )
-            found = root(function, before, at_before, here, at_here)
+            found = root(function, before, at_before, here, at_here, span)
             if found is not None:
                 return min(max(math.exp(found), low), high)
             before, at_before = here, at_here
@@ -202,7 +213,7 @@ def at_density(fluid: TwoPhaseFluid, name: str, rho: float, y: float) -> Found:
         except CaseError:
             continue
         reach.append(here[1] + y)
-        if before is not None and (found := root(function, *before, *here)) is not None:
+        if before is not None and (found := root(function, *before, *here, _span(fluid, name))) is not None:
             return ("T", "rho"), (found, rho)
         before = here
     raise _none(fluid, "rho", rho, name, y, reach)
@@ -214,25 +225,23 @@ def at_entropy(fluid: TwoPhaseFluid, name: str, s: float, y: float) -> Found:
     low, high = math.log(max(LOWEST_PRESSURE, fluid.limits.p_min)), math.log(fluid.limits.p_max)
 
     def function(log_p: float) -> float:
-        return _value(fluid, ("p", "s"), math.exp(log_p), s, name) - y
+        return _value(fluid, ("p", "s"), _pressure(fluid, log_p), s, name) - y
 
     reach: list[float] = []
-    steps = 32
+    steps, span = 32, _span(fluid, name)
     grid = sorted({*(low + (high - low) * part / steps for part in range(steps + 1)), math.log(triple * 1.0000001)})
     before: tuple[float, float] | None = None
     for log_p in grid:
         try:
             here = (log_p, function(log_p))
         except CaseError:
+            before = None  # cold water has a gap here: it freezes, and melts again at a higher pressure
             continue
         reach.append(here[1] + y)
         if here[1] >= 0.0 and before is None:
-            edge = _first_below(function, log_p - (high - low) / steps, *here)
-            if edge is None:
-                break
-            before = edge
-        if before is not None and (found := root(function, *before, *here)) is not None:
-            return ("p", "s"), (math.exp(found), s)
+            before = _first_below(function, log_p - (high - low) / steps, *here)
+        if before is not None and (found := root(function, *before, *here, span)) is not None:
+            return ("p", "s"), (_pressure(fluid, found), s)
         before = here
     raise _none(fluid, "s", s, name, y, reach)
 
@@ -259,7 +268,7 @@ def from_h_u(fluid: TwoPhaseFluid, h: float, u: float) -> Found:
     low, high = math.log(max(LOWEST_PRESSURE, fluid.limits.p_min)), math.log(fluid.limits.p_max)
 
     def function(log_p: float) -> float:
-        return _value(fluid, ("p", "h"), math.exp(log_p), h, "u") - u
+        return _value(fluid, ("p", "h"), _pressure(fluid, log_p), h, "u") - u
 
     span = _span(fluid, "u")
     before: tuple[float, float] | None = None
@@ -278,8 +287,8 @@ def from_h_u(fluid: TwoPhaseFluid, h: float, u: float) -> Found:
                     f"h and u do not fix the pressure: {fluid.name} is nearly an ideal gas there.",
                     hint="Give p or T in place of one of them.",
                 )
-            if (found := root(function, *before, *here)) is not None:
-                return ("p", "h"), (math.exp(found), h)
+            if (found := root(function, *before, *here, span)) is not None:
+                return ("p", "h"), (_pressure(fluid, found), h)
         before = here
     raise _none(fluid, "h", h, "u", u, reach)
 
