@@ -50,6 +50,8 @@ class Chain:
         self.steps: list[Step] = []
         self.surplus: list[Closing] = []
         self._unknowns: dict[int, int] = {}
+        self._later: deque[int] = deque()
+        """Equations with one unknown that would take a root or a search: tried when nothing direct is left."""
 
     def start(self) -> None:
         """Count unknowns everywhere once, and chain."""
@@ -90,7 +92,10 @@ class Chain:
                         ready.append(("equation", equation))
 
     def _run(self, ready: deque[tuple[str, int]]) -> None:
-        while ready:
+        while ready or self._later:
+            if not ready:
+                self._try_equation(self._later.popleft(), ready, patient=False)
+                continue
             what, number = ready.popleft()
             if what == "node":
                 self._try_node(number, ready)
@@ -116,7 +121,7 @@ class Chain:
                 self.surplus.append(MemberCloses(number, inputs, name, members[name]))
         self._mark([v for _, v in found], ready)
 
-    def _try_equation(self, number: int, ready: deque[tuple[str, int]]) -> None:
+    def _try_equation(self, number: int, ready: deque[tuple[str, int]], patient: bool = True) -> None:
         if number in self.used:
             return
         equation = self.model.equations[number]
@@ -125,8 +130,11 @@ class Chain:
             self.used.add(number)
             self.surplus.append(EquationCloses(number))
         elif len(unknown) == 1:
-            self.used.add(number)
             variable = unknown[0]
+            if patient and not equation.is_direct(variable):
+                self._later.append(number)
+                return
+            self.used.add(number)
             if equation.can_solve(variable):
                 self.steps.append(Rearranged(number, variable))
             else:

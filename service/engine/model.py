@@ -10,6 +10,7 @@ A value is a float, or a numpy column when the plan is run over many rows; equat
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Collection, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any, Protocol, TypeAlias
@@ -57,6 +58,9 @@ class Equation(Protocol):
     def can_solve(self, variable: int) -> bool:
         """Whether the equation can be rearranged for the variable."""
 
+    def is_direct(self, variable: int) -> bool:
+        """Whether the rearranged form has one value for any values of the others (no root to be taken)."""
+
     def solve(self, variable: int, values: Values) -> Value:
         """The variable's value from all the others."""
 
@@ -103,6 +107,13 @@ class Term:
 
 
 _POWER = {2: "²", 3: "³"}
+
+
+def _root(square: Value) -> Value:
+    """The positive square root; NaN where there is none."""
+    if isinstance(square, np.ndarray):
+        return np.sqrt(square, out=np.full(square.shape, math.nan), where=square >= 0)
+    return math.sqrt(square) if square >= 0 else math.nan
 
 
 def _bracketed(text: str) -> str:
@@ -158,6 +169,9 @@ class Polynomial:
     def can_solve(self, variable: int) -> bool:
         return self._exponent(variable) in (1, 2)
 
+    def is_direct(self, variable: int) -> bool:
+        return self._exponent(variable) == 1
+
     def solve(self, variable: int, values: Values) -> Value:
         rest: Value = 0.0
         factor: Value = 0.0
@@ -171,7 +185,7 @@ class Polynomial:
             else:
                 rest = rest + term.value(values)
         quotient = -rest / factor
-        return quotient if exponent == 1 else np.sqrt(quotient)
+        return quotient if exponent == 1 else _root(quotient)
 
     def partials(self, values: Values) -> dict[int, float]:
         result = dict.fromkeys(self.variables, 0.0)
@@ -217,6 +231,9 @@ class Function:
         return abs(self.magnitude(values)) + TINY
 
     def can_solve(self, variable: int) -> bool:
+        return variable in self.forms
+
+    def is_direct(self, variable: int) -> bool:
         return variable in self.forms
 
     def solve(self, variable: int, values: Values) -> Value:

@@ -94,7 +94,7 @@ def bare_exchanger(state: Any) -> float:
         one, other = T_hot - T_out, state.T() - T_cold
         return float(20e3 * (one - other) / np.log(one / other) - duty)
 
-    return float(brentq(off, 300.0, 350.0, xtol=1e-11))
+    return float(brentq(off, 300.0, 345.0, xtol=1e-11))
 
 
 def closed_loop() -> Document:
