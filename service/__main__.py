@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import argparse
 import dataclasses
+import os
 import sys
 from collections.abc import Callable, Sequence
 from pathlib import Path
@@ -20,7 +21,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
     """Run one command. Returns the exit status: 0; 1 for a case without an answer; 2 for a call without sense."""
     options = _parser().parse_args(arguments)
     try:
-        settings = Settings.read()
+        settings = Settings.read(os.environ)
         command: Callable[[argparse.Namespace, Settings], int] = options.command
         return command(options, settings)
     except WrongSetting as error:
@@ -92,12 +93,14 @@ def _series(options: argparse.Namespace, settings: Settings) -> int:
 
     try:
         case = _document(options.case)
-        run_csv(Operations.build(settings), case, Path(options.readings), Path(options.output))
+        count = run_csv(Operations.build(settings), case, Path(options.readings), Path(options.output))
     except CaseError as error:
         return _refused(error)
     except OSError as error:
         print(f"{error.filename}: {error.strerror}", file=sys.stderr)
         return 2
+    unsolved = "".join(f", {rows} {kind}" for kind, rows in count["unsolved"].items())
+    print(f"{count['rows']} rows: {count['solved']} solved{unsolved}", file=sys.stderr)
     return 0
 
 

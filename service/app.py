@@ -6,6 +6,7 @@ from pathlib import Path
 
 from flask import Flask
 
+from service.logs import number_requests
 from service.settings import Settings
 from service.web import docs, failures, health, resources
 from service.wire.library import schema_directory
@@ -17,6 +18,7 @@ def create_app(settings: Settings) -> Flask:
     operations = Operations.build(settings)
     app = Flask("service.web", static_folder=None)
     app.url_map.strict_slashes = False
+    number_requests(app)
     failures.install(app)
     app.register_blueprint(resources.balances(operations, settings.max_body_bytes))
     app.register_blueprint(resources.references(operations))

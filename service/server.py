@@ -10,7 +10,11 @@ from flask import Flask
 from gunicorn.app.base import BaseApplication
 
 from service.app import create_app
+from service.logs import ServerLog
 from service.settings import Settings
+
+GRACE = 10
+"""Seconds that a request may take beyond the time budget, for reading and writing, before its worker is ended."""
 
 
 class Server(BaseApplication):  # type: ignore[misc]  # gunicorn has no types
@@ -25,25 +29,37 @@ class Server(BaseApplication):  # type: ignore[misc]  # gunicorn has no types
         super().__init__()
 
     def load_config(self) -> None:
-        settings = self.settings
-        options: dict[str, Any] = {
-            "bind": f"{settings.host}:{settings.port}",
-            "workers": settings.workers or os.cpu_count() or 1,
-            "worker_class": "sync",
-            "preload_app": True,
-            "timeout": int(settings.time_budget) + 30,
-            "graceful_timeout": int(settings.time_budget) + 10,
-            "loglevel": settings.log_level,
-            "control_socket_disable": True,
-        }
-        if Path("/dev/shm").is_dir():
-            options["worker_tmp_dir"] = "/dev/shm"
-        for name, value in options.items():
-            if name in self.cfg.settings:
-                self.cfg.set(name, value)
+        """Hand the settings to gunicorn."""
+        for name, value in options(self.settings).items():
+            self.cfg.set(name, value)
 
     def load(self) -> Flask:
-        return create_app(self.settings)
+        """Build the application, and ask it once whether it is ready: what that loads is shared by all workers."""
+        app = create_app(self.settings)
+        app.test_client().get("/readyz")
+        return app
+
+
+def options(settings: Settings) -> dict[str, Any]:
+    """gunicorn's configuration for our settings."""
+    chosen: dict[str, Any] = {
+        "bind": f"{settings.host}:{settings.port}",
+        "workers": settings.workers or os.cpu_count() or 1,
+        "worker_class": "sync",
+        "preload_app": True,
+        "timeout": int(settings.time_budget) + GRACE,
+        "graceful_timeout": int(settings.time_budget) + GRACE,
+        "max_requests": 0,
+        "proc_name": "balance",
+        "control_socket_disable": True,
+        "logger_class": ServerLog,
+        "loglevel": settings.log_level,
+        "errorlog": "-",
+        "accesslog": "-" if settings.log_level in ("debug", "info") else None,
+    }
+    if Path("/dev/shm").is_dir():
+        chosen["worker_tmp_dir"] = "/dev/shm"  # a heartbeat file on a slow disk can hold a worker up
+    return chosen
 
 
 def serve(settings: Settings) -> None:

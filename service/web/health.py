@@ -2,16 +2,20 @@
 
 from __future__ import annotations
 
-from flask import Blueprint, Response
+from typing import Any
+
+from flask import Blueprint, Response, request
 
 from service.errors import CaseError
-from service.web.replies import json_reply
+from service.web.replies import json_reply, problem_reply
 from service.wire.operations import Operations
+from service.wire.problems import BLANK, bare_problem
 
 PROBE = {"fluid": "water", "state": {"p": "1 bar", "T": "20 degC"}}
 
 
 def health(operations: Operations) -> Blueprint:
+    """`/livez` checks nothing but that the process answers; `/readyz` finds one state, and with ?verbose says more."""
     pages = Blueprint("health", __name__)
 
     @pages.get("/livez")
@@ -23,8 +27,16 @@ def health(operations: Operations) -> Blueprint:
         try:
             operations.states(PROBE)
         except CaseError as error:
-            return _unstored(json_reply({"status": "not ready", "reason": error.detail}, 503))
-        return _unstored(json_reply({"status": "ready"}))
+            detail = f"A state of water could not be found: {error.detail}"
+            return problem_reply(bare_problem(BLANK, "Service Unavailable", 503, detail), 503)
+        answer: dict[str, Any] = {"status": "ready"}
+        if "verbose" in request.args:
+            answer["checks"] = [
+                {"name": "state of water", "status": "found"},
+                {"name": "schemas", "status": "read", "count": len(operations.schemas()["schemas"])},
+                {"name": "examples", "status": "read", "count": len(operations.examples()["examples"])},
+            ]
+        return _unstored(json_reply(answer))
 
     return pages
 

@@ -4,21 +4,27 @@ from __future__ import annotations
 
 import time
 from collections.abc import Callable
+from functools import lru_cache
 from typing import Any
 
 from flask import Blueprint, Response, request
 
 from service.web.bodies import read_json
-from service.web.replies import json_reply, kept_reply
-from service.wire.json_text import dumps
+from service.web.replies import JSON, Page, json_reply
 from service.wire.operations import Operations
+
+Document = dict[str, Any]
+
+SCHEMA = "application/schema+json"
+MOST_PAGES = 256
+"""Pages of single fluids, schemas and examples kept; there are about 200."""
 
 
 def balances(operations: Operations, largest_body: int) -> Blueprint:
-    """What is computed: POST with a JSON document, answer with a JSON document."""
+    """What is computed: POST with a JSON document, answer with a JSON document. largest_body [bytes]."""
     pages = Blueprint("balances", __name__, url_prefix="/v1")
 
-    def computed(work: Callable[[Any], dict[str, Any]]) -> Response:
+    def computed(work: Callable[[Any], Document]) -> Response:
         begun = time.perf_counter()
         document = read_json(request, largest_body)
         parsed = time.perf_counter()
@@ -26,7 +32,7 @@ def balances(operations: Operations, largest_body: int) -> Blueprint:
         solved = time.perf_counter()
         reply = json_reply(answer)
         dumped = time.perf_counter()
-        spans = (("read", parsed - begun), ("solve", solved - parsed), ("write", dumped - solved))
+        spans = (("parse", parsed - begun), ("solve", solved - parsed), ("dump", dumped - solved))
         reply.headers["Server-Timing"] = ", ".join(f"{name};dur={span * 1e3:.2f}" for name, span in spans)
         return reply
 
@@ -50,38 +56,54 @@ def balances(operations: Operations, largest_body: int) -> Blueprint:
 
 
 def references(operations: Operations) -> Blueprint:
-    """What can be looked up: fluids, units, schemas, examples."""
+    """What can be looked up: fluids, units, schemas, examples. Each page is written once and kept."""
     pages = Blueprint("references", __name__, url_prefix="/v1")
 
-    def kept(document: dict[str, Any], content_type: str = "application/json") -> Response:
-        return kept_reply(dumps(document), content_type)
+    lists: dict[str, Callable[[], Document]] = {
+        "fluids": operations.fluids,
+        "units": operations.units,
+        "schemas": operations.schemas,
+        "examples": operations.examples,
+    }
+    singles: dict[str, tuple[Callable[[str], Document], str]] = {
+        "fluids": (operations.fluid, JSON),
+        "schemas": (operations.schema, SCHEMA),
+        "examples": (operations.example, JSON),
+    }
+
+    @lru_cache(maxsize=MOST_PAGES)
+    def page(kind: str, name: str | None) -> Page:
+        if name is None:
+            return Page.of_document(lists[kind]())
+        describe, content_type = singles[kind]
+        return Page.of_document(describe(name), content_type)
 
     @pages.get("/fluids")
     def fluids() -> Response:
-        return kept(operations.fluids())
+        return page("fluids", None).reply()
 
     @pages.get("/fluids/<name>")
     def fluid(name: str) -> Response:
-        return kept(operations.fluid(name))
+        return page("fluids", name).reply()
 
     @pages.get("/units")
     def units() -> Response:
-        return kept(operations.units())
+        return page("units", None).reply()
 
     @pages.get("/schemas")
     def schemas() -> Response:
-        return kept(operations.schemas())
+        return page("schemas", None).reply()
 
     @pages.get("/schemas/<name>")
     def schema(name: str) -> Response:
-        return kept(operations.schema(name), "application/schema+json")
+        return page("schemas", name).reply()
 
     @pages.get("/examples")
     def examples() -> Response:
-        return kept(operations.examples())
+        return page("examples", None).reply()
 
     @pages.get("/examples/<name>")
     def example(name: str) -> Response:
-        return kept(operations.example(name))
+        return page("examples", name).reply()
 
     return pages

@@ -17,7 +17,7 @@ def readable(answer: dict[str, Any]) -> str:
 
 
 def _title(answer: dict[str, Any]) -> str:
-    title = f"{answer['title'] or 'Balance'}: {answer['status']}"
+    title = f"{answer.get('title') or 'Balance'}: {answer['status']}"
     return f"{title}\n{'=' * len(title)}"
 
 
@@ -55,9 +55,14 @@ def _ledger(answer: dict[str, Any]) -> str:
 
 def _account(account: dict[str, Any]) -> Iterator[str]:
     for line in account["lines"]:
-        yield f"    {line['value']:>16,.4f} {line['unit']:8} {line['term']} {line['of']}"
-    total = account["sum"]
-    yield f"    {total['value']:>16,.4f} {total['unit']:8} sum (closure {account['closure']:.1e})"
+        yield f"    {_figure(line)} {line['term']} {line['of']}"
+    closure = account["closure"]
+    yield f"    {_figure(account['sum'])} sum" + (f" (closure {closure:.1e})" if closure is not None else "")
+
+
+def _figure(quantity: dict[str, Any]) -> str:
+    value = quantity["value"]
+    return f"{'—' if value is None else f'{value:,.4f}':>16} {quantity['unit']:8}"
 
 
 def _steps(answer: dict[str, Any]) -> str:
@@ -72,6 +77,8 @@ def _step(step: dict[str, Any], margin: str) -> Iterator[str]:
     yield from _wrapped(step["equation"], margin + "   ")
     if step.get("numbers"):
         yield from _wrapped(step["numbers"], margin + "   ")
+    found = ", ".join(f"{address} = {_amount(quantity)}" for address, quantity in step["values"].items())
+    yield from _wrapped(f"→ {found}" if found else "", margin + "   ")
     for inner in step.get("inner", ()):
         yield from _step(inner, margin + "   ")
 
