@@ -5,78 +5,110 @@ from __future__ import annotations
 import argparse
 import contextlib
 import http.client
+import os
 import signal
 import socket
 import subprocess
 import sys
 import time
+from collections.abc import Iterator
 from pathlib import Path
 
+from service.settings import PREFIX
 from service.wire.json_text import loads
 from service.wire.readable import readable
 
 ROOT = Path(__file__).resolve().parent.parent
 DEMO = ROOT / "schemas" / "examples" / "let-down-valve.json"
+HOST = "127.0.0.1"
+PATIENCE = 120.0
+"""Seconds that the service may take until it is ready."""
 
 
 def main() -> int:
-    options = argparse.ArgumentParser()
-    options.add_argument("--once", choices=("yes", "no"), default="no")
-    options.add_argument("--port", type=int, default=8080)
-    chosen = options.parse_args()
-    port = free_port(chosen.port)
-    server = subprocess.Popen(
-        [sys.executable, "-m", "service", "serve", "--host", "127.0.0.1", "--port", str(port)], cwd=ROOT
-    )
-    signal.signal(signal.SIGTERM, lambda *_: server.terminate())
-    try:
-        if not answers(port, server):
+    parser = argparse.ArgumentParser(description=__doc__)
+    parser.add_argument("--once", action="store_true", help="stop after the answer")
+    parser.add_argument("--port", type=int, default=8080, help="port to serve on; a free one where it is taken")
+    options = parser.parse_args()
+    port = free_port(options.port)
+    signal.signal(signal.SIGTERM, _stop)
+    with serving(port) as server:
+        if not ready(port, server):
             print("The service did not start; its messages are above.", file=sys.stderr)
             return 1
-        print(f"\nPOST http://127.0.0.1:{port}/v1/balances with {DEMO.relative_to(ROOT)} answers:\n")
+        print(f"\nPOST http://{HOST}:{port}/v1/balances with {DEMO.relative_to(ROOT)} answers:\n")
         status, body = post(port, "/v1/balances", DEMO.read_bytes())
-        print(readable(loads(body)) if status == 200 else body.decode())
-        if chosen.once == "yes" or status != 200:
-            return 0 if status == 200 else 1
-        print(f"Serving on http://127.0.0.1:{port} (the contract is at /docs). Ctrl-C stops.", flush=True)
-        return server.wait()
-    except KeyboardInterrupt:
-        return 0
-    finally:
-        server.terminate()
+        if status != 200:
+            print(body.decode(), file=sys.stderr)
+            return 1
+        print(readable(loads(body)), flush=True)
+        if options.once:
+            return 0
+        print(f"Serving on http://{HOST}:{port}, for reading at http://{HOST}:{port}/docs. Ctrl-C stops.", flush=True)
         with contextlib.suppress(KeyboardInterrupt):
+            return server.wait()
+    return 0
+
+
+@contextlib.contextmanager
+def serving(port: int) -> Iterator[subprocess.Popen[bytes]]:
+    """The service as a process of its own, which ends with the block whatever happens."""
+    environment = {name: value for name, value in os.environ.items() if not name.startswith(PREFIX)}
+    environment[f"{PREFIX}LOG_LEVEL"] = "warning"
+    command = [sys.executable, "-m", "service", "serve", "--host", HOST, "--port", str(port)]
+    server = subprocess.Popen(command, cwd=ROOT, env=environment)
+    try:
+        yield server
+    finally:
+        signal.signal(signal.SIGINT, signal.SIG_IGN)  # a second Ctrl-C must not leave the service behind
+        server.terminate()
+        try:
+            server.wait(timeout=30)
+        except subprocess.TimeoutExpired:
+            server.kill()
             server.wait()
 
 
 def free_port(wanted: int) -> int:
     """The wanted port, or any free one where it is taken."""
     for candidate in (wanted, 0):
-        with socket.socket() as s, contextlib.suppress(OSError):
-            s.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
-            s.bind(("127.0.0.1", candidate))
-            return int(s.getsockname()[1])
-    raise SystemExit("No port is free on 127.0.0.1.")
+        with socket.socket() as listener, contextlib.suppress(OSError):
+            listener.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
+            listener.bind((HOST, candidate))
+            return int(listener.getsockname()[1])
+    raise SystemExit(f"No port is free on {HOST}.")
 
 
-def answers(port: int, server: subprocess.Popen[bytes]) -> bool:
-    """Wait until the service is ready, at most a minute."""
-    for _ in range(300):
-        if server.poll() is not None:
-            return False
-        with contextlib.suppress(OSError):
-            connection = http.client.HTTPConnection("127.0.0.1", port, timeout=5)
-            connection.request("GET", "/readyz")
-            if connection.getresponse().status == 200:
+def ready(port: int, server: subprocess.Popen[bytes]) -> bool:
+    """Wait until the service is ready; False where it ended or took too long."""
+    deadline = time.monotonic() + PATIENCE
+    while server.poll() is None and time.monotonic() < deadline:
+        with contextlib.suppress(OSError, http.client.HTTPException):
+            if call(port, "GET", "/readyz")[0] == 200:
                 return True
         time.sleep(0.2)
     return False
 
 
 def post(port: int, path: str, body: bytes) -> tuple[int, bytes]:
-    connection = http.client.HTTPConnection("127.0.0.1", port, timeout=30)
-    connection.request("POST", path, body, {"Content-Type": "application/json"})
-    answer = connection.getresponse()
-    return answer.status, answer.read()
+    """(status, body) of a POST."""
+    return call(port, "POST", path, body, {"Content-Type": "application/json"})
+
+
+def call(
+    port: int, method: str, path: str, body: bytes | None = None, headers: dict[str, str] | None = None
+) -> tuple[int, bytes]:
+    connection = http.client.HTTPConnection(HOST, port, timeout=30)
+    try:
+        connection.request(method, path, body, headers or {})
+        answer = connection.getresponse()
+        return answer.status, answer.read()
+    finally:
+        connection.close()
+
+
+def _stop(*_: object) -> None:
+    raise SystemExit(0)
 
 
 if __name__ == "__main__":
