@@ -14,6 +14,7 @@ from service.balance.balances import (
 )
 from service.balance.builder import Builder, BuiltCase
 from service.balance.case import Case
+from service.balance.network import refuse_dead_ends
 from service.balance.relations import add_relation
 from service.fluids.protocol import Fluid
 
@@ -24,6 +25,7 @@ def build_steady_flow(case: Case, fluids: Mapping[str, Fluid | None], also: Sequ
     also: addresses that get values, or are asked for, beyond what the case says (the columns of a series).
     """
     builder = Builder(case, fluids, also)
+    refuse_dead_ends(case, builder.built.circuits)
     for stream in case.streams:
         for name in stream.quantities:
             builder.stream_quantity(stream, name)

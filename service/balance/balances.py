@@ -7,7 +7,7 @@ import math
 from service.balance.builder import Builder, EnergyBalance
 from service.balance.case import STANDARD_GRAVITY, Stream
 from service.balance.network import Circuit, connected_groups, dependent_circuits
-from service.balance.properties import TRANSFER, Trait
+from service.balance.properties import TRANSFER
 from service.engine.model import Polynomial, Term
 from service.errors import SchemaViolation
 
@@ -130,7 +130,7 @@ def add_transfer(builder: Builder, transfer_id: str) -> None:
     """The quantities of a transfer, and the law that ties its rate where it has one."""
     transfer = builder.transfers[transfer_id]
     for name in transfer.quantities:
-        builder.variable(transfer_id, name, _transfer_trait(builder, transfer_id, name))
+        builder.variable(transfer_id, name, builder.transfer_trait(transfer_id, name))
     rate = builder.variable(transfer_id, "rate", TRANSFER["rate"])
     if transfer.has_law:
         stream = _facing_stream(builder, transfer_id)
@@ -147,17 +147,8 @@ def add_transfer(builder: Builder, transfer_id: str) -> None:
         flow = "normal_volume_flow" if "normal_volume_flow" in transfer.quantities else "mass_flow"
         if "heating_value" in transfer.quantities or flow in transfer.quantities:
             amount = builder.variable(transfer_id, flow, TRANSFER[flow])
-            value = builder.variable(
-                transfer_id, "heating_value", _transfer_trait(builder, transfer_id, "heating_value")
-            )
+            value = builder.variable(transfer_id, "heating_value", builder.transfer_trait(transfer_id, "heating_value"))
             builder.equation(f"energy of {transfer_id}", Term(1.0, ((rate, 1),)), Term(-1.0, ((amount, 1), (value, 1))))
-
-
-def _transfer_trait(builder: Builder, transfer_id: str, name: str) -> Trait:
-    by_volume = "normal_volume_flow" in builder.transfers[transfer_id].quantities
-    if name == "heating_value" and by_volume:
-        return Trait("volumetric_heating_value", 1e7, 0.0)
-    return TRANSFER[name]
 
 
 def _facing_stream(builder: Builder, transfer_id: str) -> Stream:

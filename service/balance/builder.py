@@ -130,11 +130,17 @@ class Builder:
         if item in self.streams:
             return self.stream_quantity(self.streams[item], name)
         if item in self.transfers:
-            return self.variable(item, name, TRANSFER[name])
+            return self.variable(item, name, self.transfer_trait(item, name))
         relation = self.relations[item]
         if name == "value" and relation.kind not in RELATION:  # a difference, ratio or sum: the kind is what it ties
             return self.variable(item, name, Trait(relation.quantities[name].kind, 1.0))
         return self.variable(item, name, RELATION[relation.kind if name == "value" else name])
+
+    def transfer_trait(self, transfer_id: str, name: str) -> Trait:
+        """The trait of a transfer's quantity; a heating value beside a volume flow is per normal volume."""
+        if name == "heating_value" and "normal_volume_flow" in self.transfers[transfer_id].quantities:
+            return Trait("volumetric_heating_value", 1e7, 0.0)
+        return TRANSFER[name]
 
     def stream_quantity(self, stream: Stream, name: str) -> int:
         return self.state(stream, name) if name in STATE_PROPERTIES else self.flow(stream, name)

@@ -145,6 +145,29 @@ def _balances(fluids: Mapping[str, Fluid | None], boundary: str, label: str, par
     return [circuit("dry air", air), circuit("water", part)] if air else [circuit("", part)]
 
 
+def refuse_dead_ends(case: Case, found: list[Circuit]) -> None:
+    """In steady flow what enters a circuit must leave it. Raises SchemaViolation where it cannot."""
+    issues = []
+    pointers = {b.id: b.pointer for b in case.boundaries}
+    for circuit in found:
+        if bool(circuit.inflows) != bool(circuit.outflows) and circuit.component != "water":
+            way, other = ("enters", "leaves") if circuit.inflows else ("leaves", "enters")
+            stream = case.streams[(circuit.inflows or circuit.outflows)[0]].id
+            side = f" on side {circuit.label}" if circuit.label else ""
+            text = f"{stream} {way} {circuit.boundary}{side}, but nothing of the same substance {other} there."
+            hint = "Add the missing stream, or check fluid, side and direction (`from`, `to`)."
+            issues.append(Issue(text, stream, hint))
+    crossed = {c.boundary for c in found} | {b for t in case.transfers for b in (t.source, t.target)}
+    for boundary in case.boundaries:
+        if boundary.id not in crossed:
+            text = f"Nothing crosses the boundary {boundary.id}."
+            issues.append(
+                Issue(text, "", "Let a stream or a transfer name it, or leave it out.", pointers[boundary.id])
+            )
+    if issues:
+        raise SchemaViolation(issues[0].detail, issues)
+
+
 def connected_groups(nodes: Iterable[int], links: Iterable[tuple[int, int]]) -> list[list[int]]:
     """Connected components of a graph, each sorted; nodes without a link stand alone."""
     parent = {n: n for n in nodes}

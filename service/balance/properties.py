@@ -68,6 +68,7 @@ RELATION: Mapping[str, Trait] = {
     "area": Trait("area", 1e-4, 1e-12, 100.0),
     "discharge_coefficient": Trait("dimensionless", 1.0, 1e-4, 2.0),
     "downstream_pressure": Trait("pressure", 1e5, 0.0, 1e9),
+    "mass_flux": Trait("mass_flux", 1e3, 0.0, 1e7),
 }
 """`value` of the relations that have a kind of their own, and the further quantities of a restriction.
 

@@ -4,7 +4,7 @@
     ideal gas   G = p1 √(2 k/((k−1) R T1) (r^(2/k) − r^((k+1)/k))),  r = max(p2/p1, (2/(k+1))^(k/(k−1)))
     otherwise   G = max over p in [p2, p1] of ρ(p, s1) √(2 (h1 − h(p, s1)))    isentropic, homogeneous equilibrium
 
-ṁ = Cd A G. The maximum of the mass flux over the throat pressure is the choked flux where it lies above p2.
+ṁ = Cd A G, with the ideal mass flux G. Its maximum over the throat pressure is the choked flux where it lies above p2.
 Sources: the ideal-gas form as in ISO 9300:2005 and any text on gas dynamics (value from memory); the isentropic search
 as in API Standard 520 part I, annex B (value from memory). The velocity of approach is neglected.
 """
@@ -13,14 +13,14 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
-from typing import TYPE_CHECKING, Any, NamedTuple
+from typing import TYPE_CHECKING, NamedTuple
 
 import numpy as np
 from scipy.optimize import minimize_scalar
 
 from service.balance.case import Relation
 from service.balance.properties import RELATION
-from service.engine.model import Function, Value, Values
+from service.engine.model import Function, Term, Value, Values
 from service.errors import CaseError, NoSolution
 from service.fluids.protocol import Fluid
 
@@ -99,38 +99,29 @@ def _per_row(function: Callable[..., float], *arguments: Value) -> Value:
 
 
 def add_restriction(builder: Builder, relation: Relation) -> None:
-    """Append the equation ṁ = Cd A G of a restriction to the builder's model."""
+    """Append the equations ṁ = Cd A G and G = G(upstream state, p2) of a restriction to the builder's model."""
     stream = builder.streams[relation.streams["stream"]]
     m = builder.flow(stream, "mass_flow")
     p, T, h, s, rho = (builder.state(stream, name) for name in ("p", "T", "h", "s", "rho"))
-    size_name = "area" if "area" in relation.quantities else "bore"
-    size, cd, p2 = (
+    size = "area" if "area" in relation.quantities else "bore"
+    opening, cd, p2, flux = (
         builder.variable(relation.id, name, RELATION[name])
-        for name in (size_name, "discharge_coefficient", "downstream_pressure")
+        for name in (size, "discharge_coefficient", "downstream_pressure", "mass_flux")
     )
     fluid = builder.fluid(stream)
-    by_bore = size_name == "bore"
+    area = Term(-1.0, ((cd, 1), (opening, 1), (flux, 1)))
+    if size == "bore":
+        area = Term(-math.pi / 4, ((cd, 1), (opening, 2), (flux, 1)), "π/4")
+    builder.equation(f"flow through {relation.id}", Term(1.0, ((m, 1),)), area)
 
-    def flux(v: Values) -> Any:
+    def ideal_flux(v: Values) -> Value:
         return _per_row(lambda *a: mass_flux(fluid, *a).value, v[p], v[T], v[h], v[s], v[rho], v[p2])
 
-    def area(v: Values) -> Value:
-        return math.pi / 4 * v[size] ** 2 if by_bore else v[size]
-
-    def size_of(v: Values) -> Value:
-        needed = v[m] / (v[cd] * flux(v))
-        return np.sqrt(needed * 4 / math.pi) if by_bore else needed
-
-    A = "π/4·{6}²" if by_bore else "{6}"
-    G = "G({1}, {3}, {8})"
-    forms = {
-        m: (lambda v: v[cd] * area(v) * flux(v), f"{{7}}·{A}·{G}"),
-        cd: (lambda v: v[m] / (area(v) * flux(v)), f"{{0}}/({A}·{G})"),
-        size: (size_of, f"√(4/π·{{0}}/({{7}}·{G}))" if by_bore else f"{{0}}/({{7}}·{G})"),
-    }
     builder.model.equations.append(
         Function(
-            f"restriction {relation.id}", (m, p, T, h, s, rho, size, cd, p2),
-            lambda v: v[m] - v[cd] * area(v) * flux(v), lambda v: v[m], f"{{0}} = {{7}}·{A}·{G}", forms,
+            f"mass flux of {relation.id}", (flux, p, T, h, s, rho, p2),
+            lambda v: v[flux] - ideal_flux(v), lambda v: v[flux],
+            "{0} = G(p1 = {1}, h1 = {3}, s1 = {4}, p2 = {6})",
+            {flux: (ideal_flux, "G(p1 = {1}, h1 = {3}, s1 = {4}, p2 = {6})")},
         )
     )  # fmt: skip

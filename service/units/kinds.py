@@ -132,6 +132,10 @@ KIND_ROWS: tuple[KindRow, ...] = (
         ("m3/kg", "m3/kg", "ft3/lb"), ("m3/kg", "m3/kg", "ft3/lb"), positive=True,
     ),
     KindRow(
+        "mass_flux", "mass flux", "kg/m2/s", "kilogram/meter**2/second",
+        ("kg/m2/s", "kg/m2/s", "lb/ft2/s"), ("kg/m2/s", "kg/m2/s", "lb/ft2/h"),
+    ),
+    KindRow(
         "conductance", "conductance (UA) or entropy flow", "W/K", "watt/kelvin",
         ("kW/K", "W/K", "Btu/h/degF"), ("kW/K", "W/K", "Btu/h/degR"), note=_HEAT_NOTE,
     ),

@@ -265,6 +265,12 @@ _ENERGY: dict[str, tuple[Row, ...]] = {
         ("Btu/degF", "Btu_it/delta_degF", ()),
         ("Btu/degR", "Btu_it/delta_degF", ()),
     ),
+    "mass_flux": (
+        ("kg/m2/s", "kilogram/meter**2/second", ()),
+        ("kg/m2/h", "kilogram/meter**2/hour", ()),
+        ("lb/ft2/s", "pound/foot**2/second", ()),
+        ("lb/ft2/h", "pound/foot**2/hour", ()),
+    ),
     "conductance": (
         ("W/K", "watt/kelvin", ()),
         ("kW/K", "kilowatt/kelvin", ()),

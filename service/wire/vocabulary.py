@@ -74,6 +74,7 @@ RELATION: Mapping[str, Mapping[str, str]] = MappingProxyType(
             area="area",
             discharge_coefficient="dimensionless",
             downstream_pressure="pressure",
+            mass_flux="mass_flux",
         ),
     }
 )

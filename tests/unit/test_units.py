@@ -433,6 +433,7 @@ def test_every_kind_has_units_to_be_shown_in(table: UnitTable, kind: str, system
 COHERENT_PRODUCTS = [
     ("power", ("mass_flow", "specific_energy")),
     ("power", ("conductance", "temperature_difference")),
+    ("mass_flow", ("mass_flux", "area")),
     ("power", ("heat_transfer_coefficient", "area", "temperature_difference")),
     ("power", ("normal_volume_flow", "volumetric_heating_value")),
     ("energy", ("power", "time")),

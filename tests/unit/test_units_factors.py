@@ -143,6 +143,9 @@ HAND: dict[str, dict[str, float]] = {
     "entropy": {
         "kJ/K": 1e3, "J/K": 1.0, "MJ/K": 1e6, "kcal/K": 1e3 * CAL, "Btu/degF": BTU * 1.8, "Btu/degR": BTU * 1.8,
     },
+    "mass_flux": {
+        "kg/m2/s": 1.0, "kg/m2/h": 1 / HOUR, "lb/ft2/s": LB / FT**2, "lb/ft2/h": LB / FT**2 / HOUR,
+    },
     "conductance": {
         "W/K": 1.0, "kW/K": 1e3, "MW/K": 1e6, "kJ/h/K": 1e3 / HOUR, "kcal/h/K": 1e3 * CAL / HOUR,
         "Btu/h/degF": BTU * 1.8 / HOUR, "Btu/h/degR": BTU * 1.8 / HOUR,
