@@ -30,6 +30,6 @@ mark=".venv/installed${extra:+-$extra}"
 wanted=$(cksum <pyproject.toml)
 if [ "$(cat "$mark" 2>/dev/null || true)" != "$wanted" ]; then
     echo "Installing into .venv; the first time this takes a minute or two ..." >&2
-    .venv/bin/python -m pip install --quiet --disable-pip-version-check -e ".${extra:+[$extra]}" >&2
+    .venv/bin/python -m pip install -qq --disable-pip-version-check -e ".${extra:+[$extra]}" >&2
     printf '%s\n' "$wanted" >"$mark"
 fi

@@ -17,7 +17,7 @@ def readable(answer: dict[str, Any]) -> str:
 
 
 def _title(answer: dict[str, Any]) -> str:
-    title = f"{answer.get('title') or 'Balance'}: {answer['status']}"
+    title = f"{answer.get('title') or 'Balance'} [{answer['status']}]"
     return f"{title}\n{'=' * len(title)}"
 
 
