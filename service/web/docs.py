@@ -14,6 +14,7 @@ from markupsafe import Markup, escape
 from service.errors import CaseError, NotFound
 from service.web.replies import Page
 
+SCHEMAS = "v1/schemas/"
 METHODS = ("get", "post", "put", "patch", "delete")
 POLICY = "default-src 'none'; style-src 'unsafe-inline'; base-uri 'none'; form-action 'none'"
 _CODE = re.compile(r"`([^`]+)`")
@@ -87,8 +88,9 @@ def _answer(document: dict[str, Any], status: str, answer: dict[str, Any]) -> di
 
 
 def _schema_name(content: dict[str, Any]) -> str:
-    """The name of the schema that a content refers to, "" for one that it spells out."""
-    return str(content.get("schema", {}).get("$ref", "")).rpartition("/")[2]
+    """The name of the JSON Schema that a content refers to; "" where the contract spells it out itself."""
+    reference = str(content.get("schema", {}).get("$ref", ""))
+    return reference.removeprefix(SCHEMAS) if reference.startswith(SCHEMAS) else ""
 
 
 def _sample(content: dict[str, Any]) -> str:
