@@ -44,6 +44,7 @@ TRANSFER: Mapping[str, Mapping[str, str]] = MappingProxyType(
         "heat": _table(rate="power", temperature="temperature"),
         "shaft_work": _table(rate="power"),
         "electrical_work": _table(rate="power"),
+        "expansion_work": _table(rate="power"),
         "fuel": _table(
             rate="power",
             mass_flow="mass_flow",
