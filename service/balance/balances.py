@@ -7,7 +7,7 @@ import math
 from service.balance.builder import Builder, EnergyBalance
 from service.balance.case import STANDARD_GRAVITY, Stream
 from service.balance.network import Circuit, connected_groups, dependent_circuits
-from service.balance.properties import TRANSFER
+from service.balance.properties import STATE, TRANSFER
 from service.engine.model import Polynomial, Term
 from service.errors import SchemaViolation
 
@@ -170,7 +170,7 @@ def _facing_stream(builder: Builder, transfer_id: str) -> Stream:
 
 
 def give_starting_points(builder: Builder) -> None:
-    """Temperatures and pressures start from the mean of what is given; flows from the largest given flow."""
+    """Temperatures, pressures and humidities start from the mean of what is given, flows from the largest flow."""
     by_suffix: dict[str, list[float]] = {}
     for number, value in builder.model.given.items():
         by_suffix.setdefault(builder.model.variables[number].name.rpartition(".")[2], []).append(float(value))
@@ -179,6 +179,9 @@ def give_starting_points(builder: Builder) -> None:
         starts["T"] = sum(temperatures) / len(temperatures)
     if pressures := by_suffix.get("p"):
         starts["p"] = math.exp(sum(math.log(max(p, 1.0)) for p in pressures) / len(pressures))
+    moist = by_suffix.get("humidity_ratio")
+    starts["humidity_ratio"] = sum(moist) / len(moist) if moist else STATE["humidity_ratio"].scale
+    starts["relative_humidity"] = 0.5  # its range and that of the humidity ratio end in fog, where no state is
     flow = max((abs(v) for v in by_suffix.get("mass_flow", ()) if v), default=1.0)
     for variable in builder.model.variables:
         name = variable.name.rpartition(".")[2]
