@@ -68,7 +68,7 @@ def measure(backend: Any) -> Measured:
     )  # fmt: skip
     spans = _spans(backend, limits, melting)
     spans["T"] = (min([T_min, *melting]), T_max * (1 + 1e-12))
-    spans["p"] = (LOWEST_PRESSURE, p_max * (1 + 1e-12))
+    spans["p"] = (min(LOWEST_PRESSURE, 0.5 * p_triple), p_max * (1 + 1e-12))
     return Measured(
         limits=limits, spans=spans, line={"p": (p_triple, p_top), "T": (low, T_critical)},
         melts_below=max([T_min, *(1.0001 * T for T in melting)]), has_melting_line=bool(melting),
@@ -84,10 +84,24 @@ def _ends_of_line(backend: Any, low: float, T_critical: float, p_critical: float
         lowest.append(float(backend.p()))
     try:
         backend.update(CoolProp.QT_INPUTS, 0.0, T_critical)
-        top = float(backend.p())
+        top = min(float(backend.p()), p_critical)
     except ValueError:
-        top = math.nan
-    return max(lowest), min(top, p_critical) if top == top else p_critical * (1 - 1e-9)
+        top = p_critical
+    for part in (1.0, 1 - 1e-9, 1 - 1e-6, 0.999, 0.99, 0.97, 0.95, 0.9):  # some blends end before their critical point
+        if _boils(backend, part * top):
+            return max(lowest), part * top
+    return max(lowest), 0.85 * top
+
+
+def _boils(backend: Any, p: float) -> bool:
+    try:
+        for x in (0.0, 1.0):
+            backend.update(CoolProp.PQ_INPUTS, p, x)
+            if not math.isfinite(backend.T() + backend.hmass() + backend.rhomass()):
+                return False
+    except ValueError:
+        return False
+    return True
 
 
 def _melting_points(backend: Any, p_triple: float, p_max: float) -> list[float]:
