@@ -45,8 +45,8 @@ class Settings:
             if not name.startswith(PREFIX):
                 continue
             if name not in known:
-                near = difflib.get_close_matches(name, known, 1)
-                hint = f"Did you mean {near[0]}?" if near else f"Known are {', '.join(known)}."
+                near = difflib.get_close_matches(name.removeprefix(PREFIX), [f.name.upper() for f in fields(cls)], 1)
+                hint = f"Did you mean {PREFIX}{near[0]}?" if near else f"Known are {', '.join(known)}."
                 raise WrongSetting(f"{name} is not a setting. {hint}")
             values[known[name].name] = _parsed(known[name], text)
         return cls(**values)
