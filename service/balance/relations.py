@@ -18,7 +18,7 @@ from service.balance.builder import Builder
 from service.balance.case import Relation
 from service.balance.properties import RELATION, STATE, Trait
 from service.balance.restriction import add_restriction
-from service.engine.model import Function, Polynomial, Term, Value, Values
+from service.engine.model import Function, OtherForm, Polynomial, Term, Value, Values
 from service.errors import NoSolution, SchemaViolation
 
 
@@ -64,8 +64,8 @@ def _sum(builder: Builder, relation: Relation) -> None:
 # -- machines --------------------------------------------------------------------------------------------------
 
 
-def _ends(builder: Builder, relation: Relation) -> tuple[dict[str, int], dict[str, int], str]:
-    """Variables p, T, h, s of the two streams of a machine, and whether the given pressures tell its direction."""
+def _ends(builder: Builder, relation: Relation) -> tuple[dict[str, int], dict[str, int]]:
+    """Variables p, T, h, s of the two streams of a machine."""
     start, end = (builder.streams[relation.streams[role]] for role in ("from", "to"))
     if builder.fluid(start) is not builder.fluid(end):
         raise SchemaViolation(
@@ -74,9 +74,7 @@ def _ends(builder: Builder, relation: Relation) -> tuple[dict[str, int], dict[st
         )  # fmt: skip
     first = {name: builder.state(start, name) for name in ("p", "T", "h", "s")}
     last = {name: builder.state(end, name) for name in ("p", "T", "h", "s")}
-    p1, p2 = builder.model.given.get(first["p"]), builder.model.given.get(last["p"])
-    direction = "" if p1 is None or p2 is None else ("compression" if p2 > p1 else "expansion")
-    return first, last, direction
+    return first, last
 
 
 def _pick(condition: Value, yes: Value, no: Value) -> Value:
@@ -84,7 +82,7 @@ def _pick(condition: Value, yes: Value, no: Value) -> Value:
 
 
 def _isentropic(builder: Builder, relation: Relation) -> None:
-    first, last, direction = _ends(builder, relation)
+    first, last = _ends(builder, relation)
     eta = builder.variable(relation.id, "value", RELATION[relation.kind])
     start = builder.streams[relation.streams["from"]]
     fluid = builder.fluid(start)
@@ -115,24 +113,23 @@ def _isentropic(builder: Builder, relation: Relation) -> None:
         actual = v[order[2]] - v[order[1]]
         return v[order[1]] + actual * _pick(compresses(v), v[order[0]], 1 / v[order[0]])
 
-    if direction == "compression":
-        texts = (
-            "{0}·({2} − {1}) = {3} − {1}",
-            "({3} − {1})/({2} − {1})",
-            "{1} + ({3} − {1})/{0}",
-            "{1} + {0}·({2} − {1})",
-        )
-    else:
-        texts = (
-            "{0}·({1} − {3}) = {1} − {2}",
-            "({1} − {2})/({1} − {3})",
-            "{1} − {0}·({1} − {3})",
-            "{1} − ({1} − {2})/{0}",
-        )
-    forms = {eta: (efficiency, texts[1]), last["h"]: (end_enthalpy, texts[2]), hs: (ideal_enthalpy, texts[3])}
-    builder.model.equations.append(
-        Function(f"isentropic efficiency {relation.id}", order, residual, _enthalpy_rise(order), texts[0], forms)
+    forms = {
+        eta: (efficiency, "({3} − {1})/({2} − {1})"),
+        last["h"]: (end_enthalpy, "{1} + ({3} − {1})/{0}"),
+        hs: (ideal_enthalpy, "{1} + {0}·({2} − {1})"),
+    }
+    expansion = OtherForm(
+        lambda v: not compresses(v),
+        "{0}·({1} − {3}) = {1} − {2}",
+        {
+            eta: "({1} − {2})/({1} − {3})",
+            last["h"]: "{1} − {0}·({1} − {3})",
+            hs: "{1} − ({1} − {2})/{0}",
+        },
     )
+    name, magnitude = f"isentropic efficiency {relation.id}", _enthalpy_rise(order)
+    template = "{0}·({2} − {1}) = {3} − {1}"
+    builder.model.equations.append(Function(name, order, residual, magnitude, template, forms, expansion))
 
 
 def _enthalpy_rise(order: tuple[int, ...]) -> Callable[[Values], Value]:
@@ -153,7 +150,7 @@ def _log_mean(a: Value, b: Value) -> Value:
 
 
 def _polytropic(builder: Builder, relation: Relation) -> None:
-    first, last, _ = _ends(builder, relation)
+    first, last = _ends(builder, relation)
     eta = builder.variable(relation.id, "value", RELATION[relation.kind])
     order = (eta, first["h"], last["h"], first["s"], last["s"], first["T"], last["T"], first["p"], last["p"])
 
@@ -175,13 +172,14 @@ def _polytropic(builder: Builder, relation: Relation) -> None:
 
     mean = "({6} − {5})/ln({6}/{5})"
     ideal = f"({{2}} − {{1}} − ({{4}} − {{3}})·{mean})"
-    template = f"{{0}}·({{2}} − {{1}}) = {ideal}"
-    up = builder.model.given.get(last["p"], 1.0) > builder.model.given.get(first["p"], 0.0)
-    form = f"{ideal}/({{2}} − {{1}})" if up else f"({{2}} − {{1}})/{ideal}"
-    builder.model.equations.append(
-        Function(f"polytropic efficiency {relation.id}", order, residual, magnitude,
-                 template if up else f"{{0}}·{ideal} = {{2}} − {{1}}", {eta: (efficiency, form)})
-    )  # fmt: skip
+    forms = {eta: (efficiency, f"{ideal}/({{2}} − {{1}})")}
+    expansion = OtherForm(
+        lambda v: bool(v[order[8]] <= v[order[7]]),
+        f"{{0}}·{ideal} = {{2}} − {{1}}",
+        {eta: f"({{2}} − {{1}})/{ideal}"},
+    )
+    name, template = f"polytropic efficiency {relation.id}", f"{{0}}·({{2}} − {{1}}) = {ideal}"
+    builder.model.equations.append(Function(name, order, residual, magnitude, template, forms, expansion))
 
 
 # -- exchangers ------------------------------------------------------------------------------------------------

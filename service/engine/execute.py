@@ -66,7 +66,7 @@ class _Executor:
             name = self.model.variables[step.variable].name
             raise NoSolution(
                 f"{name} cannot be found from the {equation.name}: with the numbers given, the equation "
-                f"{equation.text(self._name)} has no finite, real solution.",
+                f"{equation.text(self._name, None, self.values)} has no finite, real solution.",
                 address=name,
                 hint="Check the quantities in this equation; one of them is zero, or has the wrong size or direction.",
             )

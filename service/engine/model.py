@@ -67,8 +67,11 @@ class Equation(Protocol):
     def partials(self, values: Values) -> dict[int, float]:
         """Derivative of the residual with respect to each variable (scalar values only)."""
 
-    def text(self, show: Show, solved_for: int | None = None) -> str:
-        """The equation as a person writes it, rearranged when `solved_for` says so."""
+    def text(self, show: Show, solved_for: int | None = None, values: Values | None = None) -> str:
+        """The equation as a person writes it, rearranged when `solved_for` says so.
+
+        values: the solution, where the form of the equation depends on it.
+        """
 
 
 @dataclass(frozen=True, slots=True)
@@ -195,7 +198,7 @@ class Polynomial:
                 result[variable] += rest if exponent == 1 else rest * exponent * values[variable] ** (exponent - 1)
         return result
 
-    def text(self, show: Show, solved_for: int | None = None) -> str:
+    def text(self, show: Show, solved_for: int | None = None, values: Values | None = None) -> str:
         if solved_for is None:
             return _signed_sum([(t.coefficient, t.text(show)) for t in self.terms]) + " = 0"
         with_it = [t for t in self.terms if any(v == solved_for for v, _ in t.factors)]
@@ -211,10 +214,20 @@ class Polynomial:
 
 
 @dataclass(frozen=True, slots=True)
+class OtherForm:
+    """How a function is written where `applies(values)` holds."""
+
+    applies: Callable[[Values], bool]
+    template: str
+    forms: Mapping[int, str]
+
+
+@dataclass(frozen=True, slots=True)
 class Function:
     """Any residual. `template` writes it with {0}, {1} ... for the variables in their order.
 
-    forms maps a variable to (its explicit formula, the template of that formula).
+    forms maps a variable to (its explicit formula, the template of that formula). `otherwise` has other templates for
+    values on the other side of a switch (an expansion instead of a compression).
     """
 
     name: str
@@ -223,6 +236,7 @@ class Function:
     magnitude: Callable[[Values], Value]
     template: str
     forms: Mapping[int, tuple[Callable[[Values], Value], str]] = field(default_factory=dict)
+    otherwise: OtherForm | None = None
 
     def residual(self, values: Values) -> Value:
         return self.function(values)
@@ -254,9 +268,12 @@ class Function:
             result[variable] = (above - below) / (2 * step)
         return result
 
-    def text(self, show: Show, solved_for: int | None = None) -> str:
-        template = self.template if solved_for is None else self.forms[solved_for][1]
-        return template.format(*(show(v) for v in self.variables))
+    def text(self, show: Show, solved_for: int | None = None, values: Values | None = None) -> str:
+        template, forms = self.template, {v: text for v, (_, text) in self.forms.items()}
+        if self.otherwise is not None and values is not None and self.otherwise.applies(values):
+            template, forms = self.otherwise.template, dict(self.otherwise.forms)
+        chosen = template if solved_for is None else forms[solved_for]
+        return chosen.format(*(show(v) for v in self.variables))
 
 
 class Node(Protocol):

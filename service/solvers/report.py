@@ -151,7 +151,11 @@ def _step(plan: Plan, done: Run, step: Step, residual: float) -> StepRecord:
     model = plan.model
     if isinstance(step, Rearranged):
         equation, variable = model.equations[step.equation], step.variable
-        return StepRecord("rearranged", equation.name, (variable,), lambda show: equation.text(show, variable))
+
+        def rearranged(show: Show) -> str:
+            return equation.text(show, variable, done.values)
+
+        return StepRecord("rearranged", equation.name, (variable,), rearranged)
     if isinstance(step, Lookup):
         node = model.nodes[step.node]
         found = tuple(v for _, v in step.found)
@@ -160,7 +164,7 @@ def _step(plan: Plan, done: Run, step: Step, residual: float) -> StepRecord:
     names = " and ".join(_closing_text_name(plan, c) for c in step.closings)
 
     def text(show: Show) -> str:
-        return "; ".join(_closing_text(plan, c, show) for c in step.closings)
+        return "; ".join(_closing_text(plan, c, show, done.values) for c in step.closings)
 
     one_curve = len(step.assumed) == 1 and not is_algebraic(step)
     method: Method = "bracketed root" if one_curve else "simultaneous"
@@ -179,9 +183,9 @@ def _closing_text_name(plan: Plan, closing: Closing) -> str:
     return plan.model.nodes[closing.node].name
 
 
-def _closing_text(plan: Plan, closing: Closing, show: Show) -> str:
+def _closing_text(plan: Plan, closing: Closing, show: Show, values: Values) -> str:
     if isinstance(closing, EquationCloses):
-        return plan.model.equations[closing.equation].text(show)
+        return plan.model.equations[closing.equation].text(show, None, values)
     return f"{plan.model.nodes[closing.node].text(closing.member, closing.inputs, show)} = {show(closing.variable)}"
 
 
