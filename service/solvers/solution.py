@@ -1,1 +1,0 @@
-from service.balance.solution import *  # noqa: F403
