@@ -201,7 +201,11 @@ class HelmholtzFluid(TwoPhaseFluid):
         """Why a pair is not even tried."""
         given = {route.first: a, route.second: b}
         try:
-            if given.keys() == {"p", "T"} and given["T"] < self.spans["T"][0] and 0.0 < given["p"] < self.limits.p_max:
+            if (
+                given.keys() == {"p", "T"}
+                and 0.0 < given["T"] < self.spans["T"][0]
+                and 0.0 < given["p"] < self.limits.p_max
+            ):
                 self._require_fluid(self._handle(), given["p"], given["T"])
             for name, value in given.items():
                 self._require(name, value)
@@ -340,7 +344,7 @@ class HelmholtzFluid(TwoPhaseFluid):
     def _slope_of_degrees(self, backend: Any, name: str, p: float, slopes: Mapping[str, Slope]) -> Slope:
         x, sign = (1.0, 1.0) if name == "superheat" else (0.0, -1.0)
         try:
-            along = boiling_slope(backend, p, x)
+            along = boiling_slope(backend, p, x, self._blend)
         except ValueError:
             return math.nan, math.nan
         (T1, T2), (p1, p2) = slopes["T"], slopes["p"]

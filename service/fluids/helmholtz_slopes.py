@@ -39,8 +39,11 @@ def single_phase_slopes(backend: Any, T: float, rho: float, names: Collection[st
     return out
 
 
-def boiling_slope(backend: Any, p: float, x: float) -> float:
-    """dT/dp [K/Pa] along the saturation line at p [Pa]."""
+def boiling_slope(backend: Any, p: float, x: float, blend: bool) -> float:
+    """dT/dp [K/Pa] along the saturation line at p [Pa]; by differences for a blend, which glides."""
+    if blend:
+        step = 1e-5 * p
+        return (_values(backend, p + step, x)["T"] - _values(backend, p - step, x)["T"]) / (2.0 * step)
     backend.update(CoolProp.PQ_INPUTS, p, x)
     return float(backend.first_saturation_deriv(CoolPropLibrary.iT, CoolPropLibrary.iP))
 

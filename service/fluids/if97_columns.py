@@ -61,7 +61,8 @@ def _point(backend: Any, p: Column, T: Column, wanted: Sequence[str]) -> tuple[d
             good = good & np.isfinite(found[name])
     if "v" in wanted:
         found["v"] = 1.0 / found["rho"]
-    return {name: found[name] for name in wanted}, good
+    # what goes out must not be what came in
+    return {name: found[name].copy() if name in ("p", "T") else found[name] for name in wanted}, good
 
 
 def _in_range(p: Column, T: Column) -> Flags:
@@ -117,7 +118,7 @@ def pressure_enthalpy_columns(
         settled &= (np.abs(moved) <= SETTLED * T) & ~_near_boiling(p, T) & _in_range(p, T)
     found, sound = _point(backend, np.where(settled, p, 1e5), np.where(settled, T, 300.0), wanted)
     if "h" in wanted:
-        found["h"] = h
+        found["h"] = h.copy()
     out, errors = _singly(scalar, inputs, given, found, ~(settled & sound))
     return spread(out, errors, belongs)
 
