@@ -2,7 +2,8 @@
 
     Case
     ├── Site                       what surrounds the plant
-    ├── boundaries                 ids only: what is not listed does not cross
+    ├── boundaries                 what is not listed does not cross
+    │   └── Content                what a boundary holds (closed and transient systems)
     ├── Stream      ──┐
     ├── Transfer    ──┼── each holds its Quantities by property name
     ├── Relation    ──┘
@@ -84,7 +85,72 @@ class Stream:
     quantities: Quantities
     side_source: str | None = None
     side_target: str | None = None
+    draws: Literal["mixed", "liquid", "vapour"] = "mixed"
+    table: Mapping[str, Table] = field(default_factory=dict)
     pointer: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Table:
+    """A quantity over time: times [s] ascending, values [SI]; linear between the points or held as steps."""
+
+    times: tuple[float, ...]
+    values: tuple[float, ...]
+    between: Literal["linear", "steps"] = "linear"
+
+
+@dataclass(frozen=True, slots=True)
+class Stage:
+    """One piece of a process. quantities: what it fixes (`n`, `external_pressure`) and where it ends (`p`, `volume` ...).
+
+    In a process of one piece the quantities have the addresses `gas.process.n`; with several `gas.stage-1.p`.
+    """
+
+    kind: str
+    quantities: Quantities = field(default_factory=dict)
+
+
+@dataclass(frozen=True, slots=True)
+class Content:
+    """What a boundary holds of one fluid or solid.
+
+    quantities by name: mass, volume, initial.p, initial.T, initial.volume, initial.mass, initial.velocity,
+    initial.elevation, final.p ..., wall.mass, wall.cp, wall.area, wall.h_inside, wall.h_outside,
+    wall.ambient_temperature, wall.temperature (initial), wall.minimum_temperature (design).
+    """
+
+    id: str
+    boundary: str
+    fluid: str
+    quantities: Quantities
+    process: tuple[Stage, ...] = ()
+    pointer: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Ending:
+    """When a rate-form transient ends: at a time [s], or when a quantity reaches a value [SI], whichever is first."""
+
+    time: Quantity | None = None
+    conditions: tuple[tuple[str, Quantity], ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Target:
+    """A value [SI] that a quantity shall have at the end, or at a time [s]; closes one unknown constant."""
+
+    of: str
+    value: Quantity
+    at: float | None = None
+    pointer: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class History:
+    """The columns to report over time, and at how many points."""
+
+    columns: tuple[str, ...] = ()
+    points: int = 101
 
 
 @dataclass(frozen=True, slots=True)
@@ -97,6 +163,7 @@ class Transfer:
     target: str | None
     quantities: Quantities
     has_law: bool = False
+    table: Mapping[str, Table] = field(default_factory=dict)
     law_stream: str | None = None
     basis: Literal["net", "gross"] | None = None
     pointer: str = ""
@@ -154,6 +221,11 @@ class Case:
     relations: tuple[Relation, ...]
     limits: tuple[Limit, ...]
     answer: AnswerOptions
+    contents: tuple[Content, ...] = ()
+    form: Literal["rate", "integrated"] = "rate"
+    until: Ending = field(default_factory=Ending)
+    targets: tuple[Target, ...] = ()
+    history: History = field(default_factory=History)
 
     def quantities(self) -> Iterator[Quantity]:
         """Every quantity that the case mentions, in the order of the request."""
@@ -164,3 +236,6 @@ class Case:
         yield from (stream.quantities for stream in self.streams)
         yield from (transfer.quantities for transfer in self.transfers)
         yield from (relation.quantities for relation in self.relations)
+        for content in self.contents:
+            yield content.quantities
+            yield from (stage.quantities for stage in content.process)
