@@ -101,7 +101,7 @@ class Table:
 
 @dataclass(frozen=True, slots=True)
 class Stage:
-    """One piece of a process. quantities: what it fixes (`n`, `external_pressure`) and where it ends (`p`, `volume` ...).
+    """One piece of a process. quantities: what it fixes (`n`, `external_pressure`), and where it ends (`p`, `volume`).
 
     In a process of one piece the quantities have the addresses `gas.process.n`; with several `gas.stage-1.p`.
     """

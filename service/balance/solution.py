@@ -126,6 +126,26 @@ class Uncertainty:
 
 
 @dataclass(slots=True)
+class TransientResult:
+    """What a rate-form transient found over time, all in SI.
+
+    end_reason: which time or condition ended it; stopped: "", or why it had to stop before that; columns: address →
+    values at `times` [s]; extremes: address → (least, its time, largest, its time) over the whole integration;
+    method: integrator, tolerances and counts.
+    """
+
+    end_reason: str
+    end_time: float
+    stopped: str
+    times: npt.NDArray[np.float64]
+    columns: dict[str, npt.NDArray[np.float64]]
+    kinds: dict[str, str]
+    events: list[tuple[float, str]]
+    extremes: dict[str, tuple[float, float, float, float]]
+    method: dict[str, float | int | str]
+
+
+@dataclass(slots=True)
 class Solution:
     """A solved case. names and kinds are indexed by variable number, as the renderings use them."""
 
@@ -144,6 +164,7 @@ class Solution:
     sources: list[FluidSource]
     advisories: list[Advisory] = field(default_factory=list)
     uncertainties: dict[str, Uncertainty] = field(default_factory=dict)
+    transient: TransientResult | None = None
 
 
 @dataclass(frozen=True, slots=True)
