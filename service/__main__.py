@@ -10,7 +10,7 @@ from collections.abc import Callable, Sequence
 from pathlib import Path
 from typing import Any
 
-from service.errors import CaseError, MalformedJson
+from service.errors import CaseError
 from service.settings import Settings, WrongSetting, listing
 from service.wire.json_text import dumps, loads
 from service.wire.operations import Operations
@@ -24,9 +24,16 @@ def main(arguments: Sequence[str] | None = None) -> int:
         settings = Settings.read(os.environ)
         command: Callable[[argparse.Namespace, Settings], int] = options.command
         return command(options, settings)
+    except CaseError as error:
+        sys.stderr.buffer.write(dumps(problem(error)) + b"\n")
+        return 1
     except WrongSetting as error:
         print(error, file=sys.stderr)
-        return 2
+    except BrokenPipeError:  # whoever read our output has stopped; nothing more can be said
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+    except OSError as error:
+        print(f"{error.filename or 'file'}: {error.strerror or error}", file=sys.stderr)
+    return 2
 
 
 def _parser() -> argparse.ArgumentParser:
@@ -79,26 +86,18 @@ def _one(
     work: Callable[[Operations, Any], dict[str, Any]],
     render: Callable[[dict[str, Any]], str] | None,
 ) -> int:
-    try:
-        answer = work(Operations.build(settings), _document(options.case))
-    except CaseError as error:
-        return _refused(error)
+    answer = work(Operations.build(settings), _document(options.case))
     text = render(answer).encode() if render else dumps(answer)
     sys.stdout.buffer.write(text + b"\n")
+    sys.stdout.flush()
     return 0
 
 
 def _series(options: argparse.Namespace, settings: Settings) -> int:
     from service.wire.series_csv import run_csv
 
-    try:
-        case = _document(options.case)
-        count = run_csv(Operations.build(settings), case, Path(options.readings), Path(options.output))
-    except CaseError as error:
-        return _refused(error)
-    except OSError as error:
-        print(f"{error.filename}: {error.strerror}", file=sys.stderr)
-        return 2
+    case = _document(options.case)
+    count = run_csv(Operations.build(settings), case, Path(options.readings), Path(options.output))
     unsolved = "".join(f", {rows} {kind}" for kind, rows in count["unsolved"].items())
     print(f"{count['rows']} rows: {count['solved']} solved{unsolved}", file=sys.stderr)
     return 0
@@ -110,16 +109,7 @@ def _settings(_: argparse.Namespace, __: Settings) -> int:
 
 
 def _document(name: str) -> Any:
-    try:
-        raw = sys.stdin.buffer.read() if name == "-" else Path(name).read_bytes()
-    except OSError as error:
-        raise MalformedJson(f"{name} cannot be read: {error.strerror}.", hint="Check the file's name.") from error
-    return loads(raw)
-
-
-def _refused(error: CaseError) -> int:
-    sys.stderr.buffer.write(dumps(problem(error)) + b"\n")
-    return 1
+    return loads(sys.stdin.buffer.read() if name == "-" else Path(name).read_bytes())
 
 
 if __name__ == "__main__":

@@ -44,6 +44,7 @@ class AddressBook:
     def __init__(self, document: object) -> None:
         self.document = document
         self.entries: dict[str, tuple[str, int, Mapping[str, object]]] = {}
+        self._value_kinds: dict[str, str] = {}  # found once each: sums of sums refer to one another
         for name in LISTS:
             for number, item in items(document, name):
                 found = item_id(name, number, item)
@@ -68,7 +69,9 @@ class AddressBook:
             return table
         table = RELATION.get(kind, {}) if isinstance(kind, str) else {}
         if table.get("value") == FOLLOWS_ADDRESSES:
-            return {"value": self.value_kind(body) or "dimensionless"}
+            if item not in self._value_kinds:
+                self._value_kinds[item] = self.value_kind(body) or "dimensionless"
+            return {"value": self._value_kinds[item]}
         return table
 
     def kind(self, address: str) -> str | None:
@@ -76,25 +79,32 @@ class AddressBook:
         item, dot, name = address.rpartition(".")
         return self.properties(item).get(name) if dot else None
 
-    def value_kind(self, relation: Mapping[str, object], depth: int = 0) -> str | None:
-        """The kind of `value` of a difference or a sum, from the first address whose kind is known."""
+    def value_kind(self, relation: Mapping[str, object], depth: int = 0, seen: set[int] | None = None) -> str | None:
+        """The kind of `value` of a difference or a sum, from the first address whose kind is known.
+
+        Each relation is looked at once (`seen`), so that a ring of them, which has no kind, is left at once too.
+        """
+        seen = set() if seen is None else seen
+        if id(relation) in seen or depth > DEEPEST_RELATION:
+            return None
+        seen.add(id(relation))
         of = relation.get("of")
         for address in of if isinstance(of, list) else ():
-            kind = self._kind_of_member(address, depth) if isinstance(address, str) else None
+            kind = self._kind_of_member(address, depth, seen) if isinstance(address, str) else None
             if kind is not None:
                 return DIFFERENCE_OF.get(kind, kind) if relation.get("kind") == "difference" else kind
         return None
 
-    def _kind_of_member(self, address: str, depth: int) -> str | None:
+    def _kind_of_member(self, address: str, depth: int, seen: set[int]) -> str | None:
         item, _, name = address.rpartition(".")
         entry = self.entries.get(item)
-        if entry is not None and entry[0] == "relations" and name == "value":
+        if entry is not None and entry[0] == "relations":
             body = entry[2]
             kind = body.get("kind")
             table = RELATION.get(kind, {}) if isinstance(kind, str) else {}
             if table.get("value") == FOLLOWS_ADDRESSES:
-                return self.value_kind(body, depth + 1) if depth < DEEPEST_RELATION else None
-            return table.get("value")
+                return self.value_kind(body, depth + 1, seen) if name == "value" else None
+            return table.get(name)
         return self.kind(address)
 
     def what_is_wrong(self, address: str) -> tuple[str, str]:
