@@ -21,7 +21,7 @@ from service.fluids.citations import citation
 from service.fluids.columns import as_columns, by_rows, first_of_each, spread
 from service.fluids.handles import Handle
 from service.fluids.helmholtz_columns import Flags, run
-from service.fluids.helmholtz_limits import Range, measure, melting_pressure, melting_temperature
+from service.fluids.helmholtz_limits import Range, measure
 from service.fluids.helmholtz_slopes import boiling_slope, single_phase_slopes, two_phase_slopes
 from service.fluids.names import own_name
 from service.fluids.pairs import phase_of
@@ -85,7 +85,7 @@ class HelmholtzFluid(TwoPhaseFluid):
         self._blend = CoolPropLibrary.get_fluid_param_string(library_name, "pure") == "false"
         measured = measure(backend)
         self.limits, self.spans = measured.limits, measured.spans
-        self._cold, self._melts = measured.melts_below, measured.has_melting_line
+        self._melting, self._cold = measured.melting, measured.melting.cold
         self._p_critical, self._T_critical = measured.p_critical, measured.T_critical
         self._rho_critical = measured.rho_critical
         self._T_ceiling, self._p_ceiling = self.limits.T_max * (1 + 1e-9), self.limits.p_max * (1 + 1e-9)
@@ -259,7 +259,7 @@ class HelmholtzFluid(TwoPhaseFluid):
 
     def _require_fluid(self, handle: Handle, p: float, T: float) -> None:
         """Refuse what is frozen, or colder than the equation of state covers."""
-        lowest = self._coldest(handle, p)
+        lowest = self._melting.temperature(handle.backend, p)
         if lowest * (1 - 1e-9) <= T:
             return
         own = literal(self.name)
@@ -273,21 +273,13 @@ class HelmholtzFluid(TwoPhaseFluid):
 
     # -- limits ------------------------------------------------------------------------------------------------------
 
-    def _coldest(self, handle: Handle, p: float) -> float:
-        if not self._melts or p < (self.limits.p_triple or 0.0):
-            return self.limits.T_min
-        return melting_temperature(handle.backend, p) or self.limits.T_min
-
     def coldest(self, p: float) -> float:
         """Lowest temperature [K] of the liquid at p [Pa]: on the melting line where it is known."""
-        return self._coldest(self._handle(), p) * (1 + 1e-9)
+        return self._melting.temperature(self._handle().backend, p) * (1 + 1e-9)
 
     def highest_pressure(self, T: float) -> float:
         """Highest pressure [Pa] of the fluid at T [K]: on the melting line where it is known."""
-        if self._cold < T:
-            return self.limits.p_max
-        p = melting_pressure(self._handle().backend, T) if self._melts else None
-        return self.limits.p_max if p is None else min(p, self.limits.p_max)
+        return self._melting.pressure(self._handle().backend, T)
 
     def saturation(self, *, p: float | None = None, T: float | None = None) -> float | None:
         """Temperature [K] at which vapour at p [Pa] condenses, or pressure at T; None where not defined."""
@@ -392,7 +384,8 @@ class HelmholtzFluid(TwoPhaseFluid):
     def _doubt(self, route: Route, a: Column, b: Column, T: Column, p: Column, back: Sequence[Column]) -> Flags:
         """Rows whose results have to be looked at one by one: not finite, cold, beyond the limits, or not settled."""
         with np.errstate(invalid="ignore"):
-            good = (self._cold <= T) & (self._T_ceiling >= T) & (p > 0.0) & (p <= self._p_ceiling)
+            good: Flags = (self._T_ceiling >= T) & (p > 0.0) & (p <= self._p_ceiling)
+            good &= (self._cold <= T) | (self._melting.surely_fluid_above(p) <= T)
             for name, given, got in zip((route.first, route.second), (a, b), back, strict=True):
                 good &= np.abs(got - given) <= self._settled[name] + SETTLED * np.abs(given)
         return ~good

@@ -8,8 +8,8 @@ from dataclasses import dataclass
 from typing import Any
 
 import CoolProp
-import CoolProp.CoolProp as CoolPropLibrary
 
+from service.fluids.melting import MeltingLine, melting_temperature
 from service.fluids.protocol import Limits
 
 Range = tuple[float, float]
@@ -20,38 +20,16 @@ SPARE = 0.02  # how much wider than what was measured the spans are, relative
 
 @dataclass(frozen=True, slots=True)
 class Measured:
-    """limits; spans: property → range [SI] of all states; line: T and p of the saturation line.
-
-    melts_below: temperature [K] below which a state has to be held against the melting line (or T_min).
-    """
+    """limits; spans: property → range [SI] of all states; line: T and p of the saturation line."""
 
     limits: Limits
     spans: Mapping[str, Range]
     line: Mapping[str, Range]
-    melts_below: float
-    has_melting_line: bool
+    melting: MeltingLine
     p_critical: float
     T_critical: float
     rho_critical: float
     extras: tuple[str, ...]
-
-
-def melting_temperature(backend: Any, p: float) -> float | None:
-    """Temperature [K] at which the fluid freezes at p [Pa], None where the library does not know it."""
-    try:
-        T = float(backend.melting_line(CoolPropLibrary.iT, CoolPropLibrary.iP, p))
-    except ValueError:
-        return None
-    return T if math.isfinite(T) and T > 0.0 else None
-
-
-def melting_pressure(backend: Any, T: float) -> float | None:
-    """Pressure [Pa] at which the fluid freezes at T [K], None where the library does not know it."""
-    try:
-        p = float(backend.melting_line(CoolPropLibrary.iP, CoolPropLibrary.iT, T))
-    except ValueError:
-        return None
-    return p if math.isfinite(p) and p > 0.0 else None
 
 
 def measure(backend: Any) -> Measured:
@@ -61,17 +39,17 @@ def measure(backend: Any) -> Measured:
     T_triple = float(backend.Ttriple())
     low = max(T_triple, T_min)
     p_triple, p_top = _ends_of_line(backend, low, T_critical, p_critical)
-    melting = _melting_points(backend, p_triple, p_max)
+    melting = MeltingLine(backend, T_min, p_triple, p_max)
     limits = Limits(
         T_min=T_min, T_max=T_max, p_max=p_max, p_min=0.0,
         T_triple=T_triple, p_triple=p_triple, T_critical=T_critical, p_critical=p_critical,
     )  # fmt: skip
-    spans = _spans(backend, limits, melting)
-    spans["T"] = (min([T_min, *melting]), T_max * (1 + 1e-12))
+    spans = _spans(backend, limits, melting.known)
+    spans["T"] = (melting.lowest, T_max * (1 + 1e-12))
     spans["p"] = (min(LOWEST_PRESSURE, 0.5 * p_triple), p_max * (1 + 1e-12))
     return Measured(
         limits=limits, spans=spans, line={"p": (p_triple, p_top), "T": (low, T_critical)},
-        melts_below=max([T_min, *(1.0001 * T for T in melting)]), has_melting_line=bool(melting),
+        melting=melting,
         p_critical=p_critical, T_critical=T_critical, rho_critical=float(backend.rhomass_critical()),
         extras=("cp", "cv", "speed_of_sound", *_transport(backend, T_critical)),
     )  # fmt: skip
@@ -104,14 +82,6 @@ def _boils(backend: Any, p: float) -> bool:
     return True
 
 
-def _melting_points(backend: Any, p_triple: float, p_max: float) -> list[float]:
-    if not backend.has_melting_line():
-        return []
-    ratio = p_max / p_triple
-    grid = (p_triple * ratio ** (part / 40.0) for part in range(41))
-    return [T for p in grid if (T := melting_temperature(backend, p)) is not None]
-
-
 def _corners(backend: Any, limits: Limits) -> Iterator[None]:
     """Moves the state object to the outermost states, one after another."""
     low = max(limits.T_min, limits.T_triple or 0.0)
@@ -130,7 +100,7 @@ def _corners(backend: Any, limits: Limits) -> Iterator[None]:
         yield
 
 
-def _spans(backend: Any, limits: Limits, melting: list[float]) -> dict[str, Range]:
+def _spans(backend: Any, limits: Limits, melting: bool) -> dict[str, Range]:
     seen: dict[str, list[float]] = {"h": [], "s": [], "u": [], "rho": []}
     for _ in _corners(backend, limits):
         for name, value in (

@@ -185,9 +185,10 @@ class TwoPhaseFluid:
             hint = f"The model of {self.name} covers liquid and vapour; check the temperature and its unit."
             return refusal(StateOutOfRange, text, ("T", value), ("T", low), ("T", high), hint=hint, of=name)
         if name == "p":
-            text = f"A pressure of {{0}} is outside of the range of {own}, above zero and up to {{1}}."
+            lowest = "{2}" if limits.p_min > 0.0 else "above zero"
+            text = f"A pressure of {{0}} is outside of the range of {own}, {lowest} to {{1}}."
             hint = "Check the pressure, its unit, and whether it is gauge or absolute."
-            return refusal(StateOutOfRange, text, ("p", value), ("p", limits.p_max), hint=hint, of=name)
+            return refusal(StateOutOfRange, text, ("p", value), ("p", limits.p_max), ("p", low), hint=hint, of=name)
         text = (
             f"{name} = {{0}} is outside of what {own} has between {{1}} and {{2}} up to {{3}}: "
             f"{name} from {{4}} to {{5}}."
