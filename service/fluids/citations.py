@@ -13,6 +13,7 @@ COOLPROP = (
     "I. H. Bell, J. Wronski, S. Quoilin, V. Lemort: Pure and pseudo-pure fluid thermophysical property evaluation and "
     "the open-source thermophysical property library CoolProp. Ind. Eng. Chem. Res. 53 (2014) 2498-2508"
 )
+# the paper from memory, the release by its number
 IF97 = (
     "W. Wagner et al.: The IAPWS Industrial Formulation 1997 for the thermodynamic properties of water and steam. "
     "J. Eng. Gas Turbines Power 122 (2000) 150-184; IAPWS R7-97(2012)"
