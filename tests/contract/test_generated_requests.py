@@ -25,7 +25,7 @@ contract = schemathesis.openapi.from_dict(bundled())
 
 @contract.parametrize()
 @settings(
-    max_examples=15,
+    max_examples=10,
     derandomize=True,
     database=None,
     deadline=None,
