@@ -4,7 +4,7 @@ The programs share published equations with ours, and no code. Tolerances, each 
 
 EXACT  relative, on answers that follow from enthalpy differences: IAPWS-95 against IAPWS-95, or IF97 against IF97; the
        programs invert their equations and find saturation to about 1e-8, which differences make a few times more.
-IF97   relative, IAPWS-95 against IAPWS-IF97: the industrial formulation is a fit to the scientific one; their enthalpies
+IF97   relative, IAPWS-95 against IAPWS-IF97: the industrial formulation is a fit to the scientific one; enthalpies
        differ by up to 0.2 kJ/kg in steam and some 0.02 kJ/kg in cold water, on differences of 500 and 80 kJ/kg here.
 NASA   relative, ideal-gas enthalpies of our components' own equations of state against the NASA polynomials of
        GRI-Mech 3.0: heat capacities that differ by up to 0.14 % between 300 and 500 K, less above (found by comparing).
