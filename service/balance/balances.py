@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 
 from service.balance.builder import Builder, EnergyBalance
-from service.balance.case import STANDARD_GRAVITY, Stream
+from service.balance.case import STANDARD_GRAVITY, Stream, Transfer
 from service.balance.network import Circuit, connected_groups, dependent_circuits
 from service.balance.properties import STATE, TRANSFER
 from service.engine.model import Polynomial, Term
@@ -66,36 +66,42 @@ def _mass_terms(builder: Builder, number: int, circuit: Circuit, sign: float) ->
         if circuit.component == "dry air":
             return [Term(sign, ((dry, 1),), "", "dry air", stream.id)]
         return [Term(sign, ((dry, 1), (builder.state(stream, "humidity_ratio"), 1)), "", "water vapour", stream.id)]
-    return [Term(sign, ((builder.flow(stream, "mass_flow"), 1),), "", "mass flow", stream.id)]
+    label = builder.amount.replace("_", " ")
+    return [Term(sign, ((builder.flow(stream, builder.amount), 1),), "", label, stream.id)]
 
 
 def add_energy_balance(builder: Builder, boundary: str) -> None:
     """Energy of one boundary: enthalpy, kinetic and potential energy of its streams, and its transfers."""
     crossing = [(end.stream, 1.0 if end.enters else -1.0) for end in builder.ends[boundary]]
-    transfers = [(t, 1.0) for t in builder.transfers_into.get(boundary, ())]
-    transfers += [(t, -1.0) for t in builder.transfers_from.get(boundary, ())]
-    terms = [term for stream, sign in crossing for term in _stream_energy(builder, stream, sign, True)]
+    transfers = transfers_of(builder, boundary)
+    terms = [term for stream, sign in crossing for term in stream_energy(builder, stream, sign, True)]
     for transfer, sign in transfers:
-        rate = builder.variable(transfer.id, "rate", TRANSFER["rate"])
+        rate = builder.variable(transfer.id, builder.rate, TRANSFER[builder.rate])
         terms.append(Term(sign, ((rate, 1),), "", transfer.kind.replace("_", " "), transfer.id))
     name = f"energy balance of {boundary}"
     whole = solved = Polynomial.of(name, terms)
     mine = builder.circuits_of[boundary]
     passes = len(crossing) == 2 and all(len(c.inflows) == len(c.outflows) == 1 for c in mine if not c.component)
     if passes and not transfers and not any(c.component for c in mine):
-        per_mass = [term for stream, sign in crossing for term in _stream_energy(builder, stream, sign, False)]
+        per_mass = [term for stream, sign in crossing for term in stream_energy(builder, stream, sign, False)]
         solved = Polynomial.of(f"{name} per unit mass", per_mass)
     builder.model.equations.append(solved)
     builder.built.energy_balances.append(EnergyBalance(boundary, whole, solved))
 
 
-def _stream_energy(builder: Builder, stream: Stream, sign: float, with_flow: bool) -> list[Term]:
+def transfers_of(builder: Builder, boundary: str) -> list[tuple[Transfer, float]]:
+    """The transfers of a boundary, with +1 for those into it and −1 for those out of it."""
+    into = [(t, 1.0) for t in builder.transfers_into.get(boundary, ())]
+    return into + [(t, -1.0) for t in builder.transfers_from.get(boundary, ())]
+
+
+def stream_energy(builder: Builder, stream: Stream, sign: float, with_flow: bool) -> list[Term]:
     """Flow enthalpy, kinetic and potential energy of a stream; without its flow, per unit mass."""
     h = builder.state(stream, "h")
     if builder.built.fluids[stream.id] is not None and not builder.is_humid(stream):
         builder.state(stream, "p"), builder.state(stream, "T")
     carrying = ((builder.carrier(stream), 1),) if with_flow else ()
-    moving = ((builder.flow(stream, "mass_flow"), 1),) if with_flow else ()
+    moving = ((builder.flow(stream, builder.amount), 1),) if with_flow else ()
     terms = [Term(sign, (*carrying, (h, 1)), "", "flow enthalpy", stream.id)]
     if f"{stream.id}.velocity" in builder.model.index:
         velocity = builder.flow(stream, "velocity")
@@ -131,7 +137,7 @@ def add_transfer(builder: Builder, transfer_id: str) -> None:
     transfer = builder.transfers[transfer_id]
     for name in transfer.quantities:
         builder.variable(transfer_id, name, builder.transfer_trait(transfer_id, name))
-    rate = builder.variable(transfer_id, "rate", TRANSFER["rate"])
+    rate = builder.variable(transfer_id, builder.rate, TRANSFER[builder.rate])
     if transfer.has_law:
         stream = _facing_stream(builder, transfer_id)
         ua = builder.variable(transfer_id, "UA", TRANSFER["UA"])
@@ -144,7 +150,9 @@ def add_transfer(builder: Builder, transfer_id: str) -> None:
             Term(inward, ((ua, 1), (builder.state(stream, "T"), 1))),
         )
     if transfer.kind == "fuel":
-        flow = "normal_volume_flow" if "normal_volume_flow" in transfer.quantities else "mass_flow"
+        flow = builder.amount
+        if any(name.startswith("normal_volume") for name in transfer.quantities):
+            flow = "normal_volume" if builder.accumulating else "normal_volume_flow"
         if "heating_value" in transfer.quantities or flow in transfer.quantities:
             amount = builder.variable(transfer_id, flow, TRANSFER[flow])
             value = builder.variable(transfer_id, "heating_value", builder.transfer_trait(transfer_id, "heating_value"))

@@ -10,9 +10,9 @@ import math
 from collections.abc import Collection, Mapping
 from dataclasses import dataclass, field
 
-from service.balance.case import STATE_PROPERTIES, Case, Quantity, Stream, Transfer
+from service.balance.case import STATE_PROPERTIES, Case, Content, Quantity, Stream, Transfer
 from service.balance.network import Circuit, circuits, ends_by_boundary, mass_only
-from service.balance.properties import RELATION, STATE, STREAM, TRANSFER, Trait
+from service.balance.properties import CONTENT, PROCESS, RELATION, STATE, STREAM, TOTAL, TRANSFER, Trait
 from service.balance.state_node import StateNode
 from service.engine.model import Model, Polynomial, Term
 from service.errors import Issue, SchemaViolation
@@ -21,6 +21,7 @@ from service.fluids.protocol import Fluid
 NORMAL_MOLAR_DENSITY = 101_325.0 / (8.314462618 * 273.15)
 """[mol/m3] ideal gas at 0 degC and 101.325 kPa; R by CODATA 2018."""
 
+_FLOW_TRAITS = {**STREAM, **TOTAL}
 _FLOWS = ("mass_flow", "dry_air_flow", "molar_flow", "volume_flow", "normal_volume_flow")
 _PRESSURE_SAYING = {"p", "x", "superheat", "subcooling"}
 
@@ -54,11 +55,14 @@ class Builder:
 
     def __init__(self, case: Case, fluids: Mapping[str, Fluid | None], also_given: Collection[str] = ()) -> None:
         self.case = case
+        self.accumulating = case.system != "steady_flow"
+        self.amount, self.rate = ("mass", "energy") if self.accumulating else ("mass_flow", "rate")
         self.built = BuiltCase(case, dict(fluids))
         self.model = self.built.model
         self.streams = {s.id: s for s in case.streams}
         self.transfers = {t.id: t for t in case.transfers}
         self.relations = {r.id: r for r in case.relations}
+        self.contents = {c.id: c for c in case.contents}
         self.mass_only = mass_only(case)
         self.quantities: dict[str, Quantity] = {q.address: q for q in case.quantities()}
         self.built.circuits = circuits(case, fluids)
@@ -91,7 +95,7 @@ class Builder:
                 s = owner[s]
             return s
 
-        for circuit in self.built.circuits:
+        for circuit in self.built.circuits if not self.accumulating else ():
             if len(circuit.inflows) == len(circuit.outflows) == 1 and circuit.component != "water":
                 a, b = (find(self.case.streams[n].id) for n in (circuit.inflows[0], circuit.outflows[0]))
                 if a != b and not (metered[a] and metered[b]):
@@ -112,6 +116,14 @@ class Builder:
             self._apply(number, quantity)
         return number
 
+    def alias(self, address: str, number: int) -> int:
+        """Make a variable known under one more address, with what the case says of it there."""
+        if address not in self.model.index:
+            self.model.index[address] = number
+            if address in self.quantities:
+                self._apply(number, self.quantities[address])
+        return number
+
     def _apply(self, number: int, quantity: Quantity) -> None:
         variable = self.model.variables[number]
         if quantity.value is not None:
@@ -126,7 +138,9 @@ class Builder:
 
     def address(self, address: str) -> int:
         """The variable that an address names; flows and state properties come into being as they are mentioned."""
-        item, _, name = address.rpartition(".")
+        item, _, name = address.partition(".")
+        if item in self.contents:
+            return self.content_quantity(self.contents[item], name)
         if item in self.streams:
             return self.stream_quantity(self.streams[item], name)
         if item in self.transfers:
@@ -138,7 +152,8 @@ class Builder:
 
     def transfer_trait(self, transfer_id: str, name: str) -> Trait:
         """The trait of a transfer's quantity; a heating value beside a volume flow is per normal volume."""
-        if name == "heating_value" and "normal_volume_flow" in self.transfers[transfer_id].quantities:
+        quantities = self.transfers[transfer_id].quantities
+        if name == "heating_value" and ("normal_volume_flow" in quantities or "normal_volume" in quantities):
             return Trait("volumetric_heating_value", 1e7, 0.0)
         return TRANSFER[name]
 
@@ -149,15 +164,20 @@ class Builder:
 
     def state(self, stream: Stream, name: str) -> int:
         """The variable of a state property of a stream, as a member of the stream's node."""
-        node = self._node(stream)
+        return self._member(self._node(stream), stream.id, name)
+
+    def _member(self, number: int, item: str, name: str) -> int:
+        """The variable of a property as a member of a state's node; made a member when it is new there."""
+        node = self.model.nodes[number]
+        assert isinstance(node, StateNode)
         if name not in node.members:
             if name not in node.fluid.properties:
                 raise SchemaViolation(
-                    f"{stream.id}.{name} is not a property of {node.fluid.name}.",
-                    address=f"{stream.id}.{name}",
+                    f"{item}.{name} is not a property of {node.fluid.name}.",
+                    address=f"{item}.{name}",
                     hint=f"Its properties are {', '.join(node.fluid.properties)}.",
                 )
-            node.members[name] = self.property_variable(stream.id, name, node.fluid)
+            node.members[name] = self.property_variable(item, name, node.fluid)
         return node.members[name]
 
     def property_variable(self, item: str, name: str, fluid: Fluid) -> int:
@@ -175,21 +195,72 @@ class Builder:
             raise SchemaViolation(text, [Issue(text, stream.id, "Add `fluid`.", stream.pointer)])
         return fluid
 
-    def _node(self, stream: Stream) -> StateNode:
+    def _node(self, stream: Stream) -> int:
         number = self.built.state_nodes.get(stream.id)
         if number is None:
-            fluid = self.fluid(stream)
             number = self.built.state_nodes[stream.id] = len(self.model.nodes)
-            self.model.nodes.append(StateNode(f"state of {stream.id}", stream.id, fluid))
-        node = self.model.nodes[number]
-        assert isinstance(node, StateNode)
-        return node
+            self.model.nodes.append(StateNode(f"state of {stream.id}", stream.id, self.fluid(stream)))
+        return number
 
     def auxiliary_state(self, name: str, owner: str, fluid: Fluid, members: Mapping[str, int]) -> StateNode:
         """A state that belongs to no stream (an ideal end point), sharing variables with those that do."""
         node = StateNode(name, owner, fluid, dict(members))
         self.model.nodes.append(node)
         return node
+
+    # -- contents ----------------------------------------------------------------------------------------------
+
+    def content_quantity(self, content: Content, name: str) -> int:
+        """The variable of a content's quantity, named by its address without the content's own id.
+
+        mass, volume, expansion_work; process.n and stage-1.n; initial.p, final.T, stage-1.volume ...
+        """
+        end, _, inner = name.rpartition(".")
+        if not end:
+            if name == "volume":
+                return self.alias(f"{content.id}.volume", self.content_quantity(content, "initial.volume"))
+            if name == "mass" and self.exchanges_mass(content):
+                return self.alias(f"{content.id}.mass", self.content_quantity(content, "initial.mass"))
+            return self.variable(content.id, name, CONTENT[name])
+        if inner in STATE_PROPERTIES:
+            return self.content_state(content, end, inner)
+        if inner == "mass" and not self.exchanges_mass(content):
+            return self.alias(f"{content.id}.{name}", self.content_quantity(content, "mass"))
+        if inner in PROCESS:
+            return self.variable(f"{content.id}.{end}", inner, PROCESS[inner])
+        known = self.model.index.get(f"{content.id}.{name}")
+        if known is not None:
+            return known
+        number = self.variable(f"{content.id}.{end}", inner, CONTENT[inner] if inner in CONTENT else STREAM[inner])
+        if inner == "volume" and not self.is_empty(content, end):
+            mass = self.content_quantity(content, f"{end}.mass")
+            v = self.content_state(content, end, "v")
+            self.equation(f"volume of {content.id}, {end}", Term(1.0, ((number, 1),)), Term(-1.0, ((mass, 1), (v, 1))))
+        return number
+
+    def exchanges_mass(self, content: Content) -> bool:
+        """Whether streams of the content's fluid cross its boundary, so that its mass changes."""
+        return any(
+            self.built.fluids[end.stream.id] is self.built.fluids[content.id] for end in self.ends[content.boundary]
+        )
+
+    def is_empty(self, content: Content, end: str) -> bool:
+        """Whether a content is said to have no mass at one of its ends (an evacuated vessel): it then has no state."""
+        quantity = self.quantities.get(f"{content.id}.{end}.mass")
+        if quantity is None and end == "initial" and self.exchanges_mass(content):
+            quantity = self.quantities.get(f"{content.id}.mass")
+        return quantity is not None and quantity.value == 0.0
+
+    def content_state(self, content: Content, end: str, name: str) -> int:
+        """The variable of a state property of a content at one end of its process."""
+        fluid = self.built.fluids[content.id]
+        assert fluid is not None  # a content always names its fluid
+        key = f"{content.id}.{end}"
+        number = self.built.state_nodes.get(key)
+        if number is None:
+            number = self.built.state_nodes[key] = len(self.model.nodes)
+            self.model.nodes.append(StateNode(f"{end.replace('-', ' ')} state of {content.id}", key, fluid))
+        return self._member(number, key, name)
 
     # -- flows -------------------------------------------------------------------------------------------------
 
@@ -199,7 +270,7 @@ class Builder:
 
     def carrier(self, stream: Stream) -> int:
         """The flow that carries the stream's specific properties: dry air for humid air, the mass flow otherwise."""
-        return self.flow(stream, "dry_air_flow" if self.is_humid(stream) else "mass_flow")
+        return self.flow(stream, "dry_air_flow" if self.is_humid(stream) else self.amount)
 
     def flow(self, stream: Stream, name: str) -> int:
         """The variable of a flow quantity of a stream, with the equation that ties it to the mass flow."""
@@ -207,9 +278,9 @@ class Builder:
             return self.model.index[f"{stream.id}.{name}"]
         if self.is_humid(stream) and name in ("mass_flow", "dry_air_flow"):
             return self._moist_flows(stream)[name]
-        if name == "mass_flow":
+        if name == self.amount:
             return self._carrier_variable(stream, name)
-        number = self.variable(stream.id, name, STREAM[name])
+        number = self.variable(stream.id, name, _FLOW_TRAITS[name])
         if name in ("molar_flow", "normal_volume_flow"):
             self._tie_amount(stream, name, number)
         elif name == "volume_flow":
@@ -233,13 +304,8 @@ class Builder:
         """The stream's own flow variable, or the one it shares, made known under this stream's address too."""
         owner = self._flow_of[stream.id]
         if owner == stream.id:
-            return self.variable(stream.id, name, STREAM[name])
-        number = self.flow(self.streams[owner], name)
-        address = f"{stream.id}.{name}"
-        self.model.index[address] = number
-        if address in self.quantities:
-            self._apply(number, self.quantities[address])
-        return number
+            return self.variable(stream.id, name, _FLOW_TRAITS[name])
+        return self.alias(f"{stream.id}.{name}", self.flow(self.streams[owner], name))
 
     def _moist_flows(self, stream: Stream) -> dict[str, int]:
         """Total and dry-air flow of a humid stream, tied by its humidity ratio."""

@@ -85,9 +85,9 @@ class Stream:
     quantities: Quantities
     side_source: str | None = None
     side_target: str | None = None
+    pointer: str = ""
     draws: Literal["mixed", "liquid", "vapour"] = "mixed"
     table: Mapping[str, Table] = field(default_factory=dict)
-    pointer: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -163,10 +163,10 @@ class Transfer:
     target: str | None
     quantities: Quantities
     has_law: bool = False
-    table: Mapping[str, Table] = field(default_factory=dict)
     law_stream: str | None = None
     basis: Literal["net", "gross"] | None = None
     pointer: str = ""
+    table: Mapping[str, Table] = field(default_factory=dict)
 
 
 @dataclass(frozen=True, slots=True)

@@ -47,18 +47,21 @@ def fluid_keys(case: Case) -> dict[str, str | None]:
     """
     found: dict[str, str | None] = {s.id: s.fluid for s in case.streams}
     ends = ends_by_boundary(case)
+    held: dict[str, set[str]] = {b.id: set() for b in case.boundaries}
+    for content in case.contents:
+        held[content.boundary].add(content.fluid)
     changed = True
     while changed:
         changed = False
         for stream in case.streams:
             if found[stream.id] is None:
-                choices = _possible(ends, stream, found)
+                choices = _possible(ends, held, stream, found)
                 if len(choices) == 1:
                     found[stream.id] = choices.pop()
                     changed = True
     issues = []
     for stream in case.streams:
-        if found[stream.id] is None and (choices := _possible(ends, stream, found)):
+        if found[stream.id] is None and (choices := _possible(ends, held, stream, found)):
             listed = ", ".join(sorted(choices))
             issues.append(
                 Issue(f"Stream {stream.id} names no fluid, and its boundary has several: {listed}.", stream.id,
@@ -81,10 +84,14 @@ def ends_by_boundary(case: Case) -> dict[str, list[End]]:
     return ends
 
 
-def _possible(ends: Mapping[str, list[End]], stream: Stream, found: Mapping[str, str | None]) -> set[str]:
+def _possible(
+    ends: Mapping[str, list[End]], held: Mapping[str, set[str]], stream: Stream, found: Mapping[str, str | None]
+) -> set[str]:
     """Fluids that neighbours suggest: those of the same side where there are any, else those of the boundary."""
     for same_side in (True, False):
         choices: set[str] = set()
+        if not same_side:
+            choices = {key for b in (stream.source, stream.target) if b is not None for key in held[b]}
         for boundary, label in ((stream.source, stream.side_source), (stream.target, stream.side_target)):
             for end in ends[boundary] if boundary is not None else ():
                 key = found[end.stream.id]

@@ -49,14 +49,32 @@ STREAM: Mapping[str, Trait] = {
     "elevation": Trait("length", 10.0),
 }
 
+TOTAL: Mapping[str, Trait] = {"mass": Trait("mass", 1.0)}
+"""Quantities of a stream over a whole period."""
+
 TRANSFER: Mapping[str, Trait] = {
     "rate": Trait("power", 1e5),
+    "energy": Trait("energy", 1e5),
+    "mass": Trait("mass", 1.0),
+    "normal_volume": Trait("normal_volume", 1.0),
     "temperature": Trait("temperature", 100.0, 0.0, 1e4),
     "UA": Trait("conductance", 1e3, 0.0, 1e12),
     "source_temperature": Trait("temperature", 100.0, 0.0, 1e4),
     "mass_flow": Trait("mass_flow", 1.0),
     "normal_volume_flow": Trait("normal_volume_flow", 1.0),
     "heating_value": Trait("specific_energy", 1e7, 0.0),
+}
+
+CONTENT: Mapping[str, Trait] = {
+    "mass": Trait("mass", 1.0),
+    "volume": Trait("volume", 1.0, 0.0),
+    "expansion_work": Trait("energy", 1e5),
+}
+"""Quantities of a content beside its states; mass and volume also at each end (`gas.initial.volume`)."""
+
+PROCESS: Mapping[str, Trait] = {
+    "n": Trait("dimensionless", 1.0, -100.0, 100.0),
+    "external_pressure": Trait("pressure", 1e5, 0.0, 1e9),
 }
 
 RELATION: Mapping[str, Trait] = {

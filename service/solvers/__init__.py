@@ -11,19 +11,19 @@ from service.balance.case import Case
 from service.balance.solution import SeriesResult, Solution, StructureReport
 from service.errors import SchemaViolation
 from service.fluids.catalogue import FluidCatalogue
-from service.solvers import steady_flow
+from service.solvers import pipeline
 
 
 def solve(case: Case, catalogue: FluidCatalogue, deadline: float | None = None) -> Solution:
     """The solved case [SI]. Raises CaseError; `deadline` is a time.monotonic() value."""
-    _only_steady_flow(case)
-    return steady_flow.solve(case, catalogue, deadline)
+    _no_rate_form(case)
+    return pipeline.solve(case, catalogue, deadline)
 
 
 def check(case: Case, catalogue: FluidCatalogue) -> StructureReport:
     """The structural count of a case: what can be found, what stays open, what is given twice."""
-    _only_steady_flow(case)
-    return steady_flow.check(case, catalogue)
+    _no_rate_form(case)
+    return pipeline.check(case, catalogue)
 
 
 def series(
@@ -33,13 +33,14 @@ def series(
     report: Sequence[str],
     deadline: float | None = None,
 ) -> SeriesResult:
-    """The case over columns of readings [SI]; see `steady_flow.series`."""
-    _only_steady_flow(case)
-    return steady_flow.series(case, catalogue, readings, report, deadline)
+    """The case over columns of readings [SI]; see `pipeline.series`."""
+    _no_rate_form(case)
+    return pipeline.series(case, catalogue, readings, report, deadline)
 
 
-def _only_steady_flow(case: Case) -> None:
-    if case.system != "steady_flow":
+def _no_rate_form(case: Case) -> None:
+    if case.system == "transient" and case.form == "rate":
         raise SchemaViolation(
-            f"This version solves steady-flow cases only, not {case.system}.", hint='Use "system": "steady_flow".'
+            "This cannot be done for a transient in its rate form.",
+            hint='Use "form": "integrated", or solve it as one case.',
         )

@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 
 from service.balance.builder import BuiltCase
+from service.balance.case import Content
 from service.balance.solution import (
     FluidSource,
     Found,
@@ -26,7 +27,8 @@ from service.engine.plan import Closing, EquationCloses, Lookup, Plan, Rearrange
 
 WORK = {"shaft work", "electrical work", "expansion work"}
 STREAM_FLOWS = (
-    "mass_flow", "dry_air_flow", "molar_flow", "volume_flow", "normal_volume_flow", "velocity", "bore", "elevation",
+    "mass", "mass_flow", "dry_air_flow", "molar_flow", "volume_flow", "normal_volume_flow",
+    "velocity", "bore", "elevation",
 )  # fmt: skip
 
 
@@ -101,21 +103,41 @@ def _states(built: BuiltCase, done: Run) -> list[StreamState]:
         if "volume_flow" not in flows and "mass_flow" in flows and "rho" in properties:
             flows["volume_flow"] = flows["mass_flow"] / properties["rho"]
         states.append(StreamState(stream.id, fluid.name if fluid else "", phase, properties, flows))
-    return states
+    return states + [s for c in built.case.contents for s in _content_states(built, done, c)]
+
+
+def _content_states(built: BuiltCase, done: Run, content: Content) -> Iterator[StreamState]:
+    """The states of a content from its initial one to its final one."""
+    fluid = built.fluids[content.id]
+    for key, number in sorted(built.state_nodes.items(), key=lambda item: item[1]):
+        if key.partition(".")[0] != content.id:
+            continue
+        looked_up = done.lookups.get(number)
+        properties, phase = (looked_up, looked_up.phase) if isinstance(looked_up, FoundState) else ({}, "")
+        held = {
+            name: float(done.values[v])
+            for name in ("mass", "volume", "velocity", "elevation")
+            if (v := built.model.index.get(f"{key}.{name}", built.model.index.get(f"{content.id}.{name}"))) is not None
+            and math.isfinite(done.values[v])
+        }
+        if "mass" in held and "v" in properties:
+            held["volume"] = held["mass"] * properties["v"]
+        yield StreamState(key, fluid.name if fluid else "", phase, properties, held)
 
 
 # -- ledger ----------------------------------------------------------------------------------------------------
 
 
 def _ledger(built: BuiltCase, done: Run) -> list[LedgerAccount]:
+    amount, energy_kind = ("mass_flow", "power") if built.case.system == "steady_flow" else ("mass", "energy")
     accounts = []
     for circuit, balance in zip(built.circuits, built.mass_balances, strict=True):
         if _known(balance, done.values):
             label = " ".join(part for part in (circuit.label, circuit.component) if part)
-            accounts.append(_account(circuit.boundary, "mass", label, "mass_flow", balance, done.values))
+            accounts.append(_account(circuit.boundary, "mass", label, amount, balance, done.values))
     for energy in built.energy_balances:
         if _known(energy.whole, done.values):
-            accounts.append(_account(energy.boundary, "energy", "", "power", energy.whole, done.values))
+            accounts.append(_account(energy.boundary, "energy", "", energy_kind, energy.whole, done.values))
         elif energy.solved is not energy.whole and _known(energy.solved, done.values):
             accounts.append(
                 _account(energy.boundary, "energy", "per unit mass", "specific_energy", energy.solved, done.values)
@@ -235,12 +257,14 @@ def _assumptions(built: BuiltCase) -> list[str]:
     worked = {b for t in case.transfers if t.kind not in ("heat", "fuel") for b in (t.source, t.target)}
     if adiabatic := [b for b in energetic if b not in heated]:
         out.append(f"No heat crosses {_listed(adiabatic)}: none is listed (adiabatic).")
+    worked |= {c.boundary for c in case.contents if c.process}
     if workless := [b for b in energetic if b not in worked]:
         out.append(f"No work crosses {_listed(workless)}: none is listed.")
     told = [s.id for s in case.streams if {s.source, s.target} & set(energetic)]
-    if still := [s for s in told if f"{s}.velocity" not in built.model.index]:
+    told += [c.id for c in case.contents]
+    if still := [s for s in told if not _moves(built, s, "velocity")]:
         out.append(f"Kinetic energy is neglected for {_listed(still)}: neither velocity nor bore is given.")
-    if level := [s for s in told if f"{s}.elevation" not in built.model.index]:
+    if level := [s for s in told if not _moves(built, s, "elevation")]:
         out.append(f"Potential energy is neglected for {_listed(level)}: no elevation is given.")
     if not case.site.pressure_given:
         out.append(f"Atmospheric pressure at the site is taken as {case.site.atmospheric_pressure / 1e3:g} kPa.")
@@ -248,6 +272,11 @@ def _assumptions(built: BuiltCase) -> list[str]:
     if massive:
         out.append(f"Balanced for mass only, since nothing is said of any state: {_listed(massive)}.")
     return out
+
+
+def _moves(built: BuiltCase, item: str, name: str) -> bool:
+    """Whether anything is said of a stream's or content's velocity or elevation."""
+    return any(f"{item}.{end}{name}" in built.model.index for end in ("", "initial.", "final."))
 
 
 def _listed(names: Sequence[str]) -> str:

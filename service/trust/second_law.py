@@ -8,7 +8,7 @@ from __future__ import annotations
 import math
 
 from service.balance.builder import BuiltCase
-from service.balance.case import Stream, Transfer
+from service.balance.case import Content, Stream, Transfer
 from service.balance.network import connected_groups
 from service.balance.solution import EntropyCheck
 from service.engine.execute import Run
@@ -56,6 +56,9 @@ def _check(built: BuiltCase, done: Run, name: str, group: set[str]) -> EntropyCh
     streams = [(s, (s.source in group) * 1.0 - (s.target in group) * 1.0) for s in case.streams]
     crossing = [(s, sign) for s, sign in streams if sign]
     terms = [sign * _flow(built, done, s, len(crossing)) * _entropy(built, done, s) for s, sign in crossing]
+    for content in case.contents:
+        if content.boundary in group:
+            terms += _stored(built, done, content)
     at_ambient = []
     for transfer in case.transfers:
         sign = (transfer.source in group) * 1.0 - (transfer.target in group) * 1.0
@@ -71,9 +74,24 @@ def _check(built: BuiltCase, done: Run, name: str, group: set[str]) -> EntropyCh
     return EntropyCheck(name, generation, "satisfied", f"Entropy generation is not negative.{note}")
 
 
+def _stored(built: BuiltCase, done: Run, content: Content) -> list[float]:
+    """Final and minus initial entropy of a content [J/K]."""
+    terms = []
+    for end, sign in (("initial", -1.0), ("final", 1.0)):
+        index = built.model.index
+        mass = done.values[index.get(f"{content.id}.{end}.mass", index.get(f"{content.id}.mass", 0))]
+        if mass == 0.0:
+            continue
+        looked_up = done.lookups.get(built.state_nodes.get(f"{content.id}.{end}", -1))
+        if looked_up is None or not math.isfinite(mass) or not math.isfinite(looked_up.get("s", math.nan)):
+            raise _NotCheckable(f"The {end} state or mass of {content.id} is not known.")
+        terms.append(sign * mass * looked_up["s"])
+    return terms
+
+
 def _flow(built: BuiltCase, done: Run, stream: Stream, crossing: int) -> float:
-    index = built.model.index
-    number = index.get(f"{stream.id}.dry_air_flow", index.get(f"{stream.id}.mass_flow"))
+    index, amount = built.model.index, "mass_flow" if built.case.system == "steady_flow" else "mass"
+    number = index.get(f"{stream.id}.dry_air_flow", index.get(f"{stream.id}.{amount}"))
     flow = done.values[number] if number is not None else math.nan
     if math.isfinite(flow):
         return float(flow)
@@ -96,7 +114,8 @@ def _entropy_of_transfer(built: BuiltCase, done: Run, transfer: Transfer) -> tup
         raise _NotCheckable(f"{transfer.id} is a fuel; the entropy of its combustion is not modelled.")
     if transfer.kind != "heat":
         return 0.0, False
-    rate = done.values[built.model.index[f"{transfer.id}.rate"]]
+    rate_name = "rate" if built.case.system == "steady_flow" else "energy"
+    rate = done.values[built.model.index[f"{transfer.id}.{rate_name}"]]
     if not math.isfinite(rate):
         raise _NotCheckable(f"The rate of {transfer.id} is not known.")
     if rate == 0.0:

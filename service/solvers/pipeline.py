@@ -1,4 +1,4 @@
-"""Steady flow: nothing accumulates, everything crosses the boundary at a constant rate."""
+"""What steady flow and balances over a period share: build the model, order it, run it, compare, report."""
 
 from __future__ import annotations
 
@@ -8,7 +8,7 @@ import numpy as np
 import numpy.typing as npt
 
 from service.advisories import advise
-from service.balance.assemble import build_steady_flow
+from service.balance.assemble import build_accumulating, build_steady_flow
 from service.balance.builder import BuiltCase
 from service.balance.case import Case
 from service.balance.network import fluid_keys
@@ -24,8 +24,11 @@ from service.solvers.report import report, structure_report, surplus_check
 from service.trust.second_law import entropy_checks
 from service.trust.uncertainty import uncertainties
 
-EXTENSIVE = {"mass_flow", "molar_flow", "volume_flow", "normal_volume_flow", "power", "conductance", "area", "length"}
-"""Kinds of quantity that fix how much flows; without any, a case is balanced for a unit of flow."""
+EXTENSIVE = {
+    "mass_flow", "molar_flow", "volume_flow", "normal_volume_flow", "power", "conductance", "area", "length",
+    "mass", "volume", "normal_volume", "energy",
+}  # fmt: skip
+"""Kinds of quantity that fix how much there is or flows; without any, a case is balanced for a unit of mass."""
 
 
 def solve(case: Case, catalogue: FluidCatalogue, deadline: float | None = None) -> Solution:
@@ -47,17 +50,22 @@ def check(case: Case, catalogue: FluidCatalogue) -> StructureReport:
 
 
 def prepare(case: Case, catalogue: FluidCatalogue) -> tuple[BuiltCase, Plan]:
-    """The case's model and its plan; per kilogram and second where nothing says how much flows."""
+    """The case's model and its plan; per unit of mass where nothing says how much there is."""
     fluids = resolve_fluids(case, catalogue)
-    built = build_steady_flow(case, fluids)
+    built = _build(case, fluids)
     return built, _plan(built)
+
+
+def _build(case: Case, fluids: Mapping[str, Fluid | None], also: Sequence[str] = ()) -> BuiltCase:
+    writer = build_steady_flow if case.system == "steady_flow" else build_accumulating
+    return writer(case, fluids, also)
 
 
 def _plan(built: BuiltCase) -> Plan:
     try:
         return compile_plan(built.model)
     except UnderSpecified:
-        if not _assume_unit_flow(built):
+        if not _assume_unit_amount(built):
             raise
     return compile_plan(built.model)
 
@@ -65,23 +73,24 @@ def _plan(built: BuiltCase) -> Plan:
 def resolve_fluids(case: Case, catalogue: FluidCatalogue) -> dict[str, Fluid | None]:
     """Property model of each stream. Raises UnknownFluid, and SchemaViolation where the fluid is not clear."""
     keys = fluid_keys(case)
+    keys.update({c.id: c.fluid for c in case.contents})
+    pointers = {s.id: s.pointer for s in case.streams} | {c.id: c.pointer for c in case.contents}
     models: dict[str, Fluid] = {}
     problems: dict[str, CaseError] = {}
-    for stream in case.streams:
-        key = keys[stream.id]
+    for item, key in keys.items():
         if key is None or key in models or key in problems:
             continue
         try:
             models[key] = catalogue.resolve(_spec(case, key))
         except CaseError as problem:
-            pointer = f"#/fluids/{key}" if key in case.fluids else f"{stream.pointer}/fluid"
+            pointer = f"#/fluids/{key}" if key in case.fluids else f"{pointers[item]}/fluid"
             issues = [_at(issue, pointer) for issue in problem.issues or (Issue(problem.detail),)]
             problems[key] = type(problem)(problem.detail, issues)
     if problems:
         first, *_ = problems.values()
         raise type(first)(first.detail, [issue for p in problems.values() for issue in p.issues])
     _refuse_two_models_of_one_substance(models)
-    return {s.id: models[key] if (key := keys[s.id]) is not None else None for s in case.streams}
+    return {item: models[key] if key is not None else None for item, key in keys.items()}
 
 
 def _at(issue: Issue, pointer: str) -> Issue:
@@ -111,20 +120,22 @@ def _refuse_two_models_of_one_substance(models: Mapping[str, Fluid]) -> None:
             )
 
 
-def _assume_unit_flow(built: BuiltCase) -> bool:
-    """Give the first stream 1 kg/s where no extensive quantity is given or asked for."""
+def _assume_unit_amount(built: BuiltCase) -> bool:
+    """Give the first stream 1 kg/s, or the first content 1 kg, where no extensive quantity is given or asked for."""
     model = built.model
-    concerned = [*model.given, *model.wanted]
-    if not built.case.streams or any(built.kinds[v] in EXTENSIVE for v in concerned):
+    if any(built.kinds[v] in EXTENSIVE for v in (*model.given, *model.wanted)):
         return False
-    first = built.case.streams[0].id
-    number = model.index.get(f"{first}.dry_air_flow", model.index.get(f"{first}.mass_flow"))
-    if number is None:
+    items = [*(c.id for c in built.case.contents), *(s.id for s in built.case.streams)]
+    names = (f"{item}.{name}" for item in items for name in ("mass", "initial.mass", "dry_air_flow", "mass_flow"))
+    address = next((name for name in names if name in model.index), None)
+    if address is None:
         return False
+    number = model.index[address]
     model.given[number] = 1.0
+    unit = "1 kg" if built.kinds[number] == "mass" else "1 kg/s"
     built.assumptions.append(
-        f"Nothing says how much flows: {model.variables[number].name} is taken as 1 kg/s; "
-        "flows and rates are per that unit, states and ratios hold for any flow."
+        f"Nothing says how much there is: {address} is taken as {unit}; masses, flows, heat and work are per that "
+        "unit, states and ratios hold for any amount."
     )
     return True
 
@@ -161,7 +172,7 @@ def series(
     problem type; it costs no other row.
     """
     rows = len(next(iter(readings.values()))) if readings else 1
-    built = build_steady_flow(case, resolve_fluids(case, catalogue), (*readings, *report_addresses))
+    built = _build(case, resolve_fluids(case, catalogue), (*readings, *report_addresses))
     reported = {address: _series_variable(built, address) for address in report_addresses}
     columns: dict[int, Column] = {}
     for address, column in readings.items():
