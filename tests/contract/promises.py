@@ -102,7 +102,7 @@ def assert_promised(reply: TestResponse, path: str, method: str) -> Any:
         assert reply.data == b""
         return None
     assert reply.mimetype in stated["content"], (reply.mimetype, reply.data[:300])
-    if not reply.mimetype.endswith("json"):
+    if not (reply.mimetype or "").endswith("json"):
         return reply.data
     document = json.loads(reply.data)
     assert_fits(document, stated["content"][reply.mimetype]["schema"])

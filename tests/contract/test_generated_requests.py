@@ -5,6 +5,8 @@ Few and always the same, so that the suite stays quick and a failure can be repe
 
 from __future__ import annotations
 
+from typing import Any
+
 import schemathesis
 from flask import Flask
 from hypothesis import HealthCheck, Phase, settings
@@ -32,5 +34,5 @@ contract = schemathesis.openapi.from_dict(bundled())
     phases=[Phase.explicit, Phase.generate],
     suppress_health_check=list(HealthCheck),
 )
-def test_every_reply_to_a_generated_request_is_one_of_the_contract(case: Case, app: Flask) -> None:
+def test_every_reply_to_a_generated_request_is_one_of_the_contract(case: Case[Any], app: Flask) -> None:
     case.call_and_validate(app=app, checks=CHECKS)
