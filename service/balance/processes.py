@@ -61,14 +61,19 @@ def add_process(builder: Builder, content: Content) -> None:
         else:
             works.append(_KINDS[piece.stage.kind](builder, content, piece))
     done = [w for w in works if w is not None]
-    if len(done) == 1:
-        builder.alias(f"{content.id}.expansion_work", done[0])
-    elif done:
+    if not done:
+        if f"{content.id}.expansion_work" in builder.quantities:
+            builder.model.given[builder.content_quantity(content, "expansion_work")] = 0.0
+    elif len(content.process) > 1:
         total = builder.content_quantity(content, "expansion_work")
         terms = [Term(1.0, ((total, 1),)), *(Term(-1.0, ((w, 1),)) for w in done)]
         builder.equation(f"expansion work of {content.id}", *terms)
-    elif f"{content.id}.expansion_work" in builder.quantities:
-        builder.model.given[builder.content_quantity(content, "expansion_work")] = 0.0
+
+
+def _work_variable(builder: Builder, content: Content, piece: Piece) -> int:
+    """The expansion work of a stage; of a process in one stage it is the content's own."""
+    item = content.id if piece.label == "process" else f"{content.id}.{piece.label}"
+    return builder.variable(item, "expansion_work", CONTENT["expansion_work"])
 
 
 def work_terms(builder: Builder, content: Content) -> list[Term]:
@@ -99,9 +104,7 @@ class _Ends:
 
     def work(self, *specific: Term) -> int:
         """The work variable, tied to mass · Σ specific terms."""
-        number = self.builder.variable(
-            f"{self.content.id}.{self.piece.label}", "expansion_work", CONTENT["expansion_work"]
-        )
+        number = _work_variable(self.builder, self.content, self.piece)
         mass = self.builder.content_quantity(self.content, "mass")
         terms = [Term(-t.coefficient, ((mass, 1), *t.factors), t.symbol) for t in specific]
         self.builder.equation(f"expansion work of {self.name}", Term(1.0, ((number, 1),)), *terms)
@@ -183,7 +186,7 @@ def _polytropic(builder: Builder, content: Content, piece: Piece) -> int | None:
             lambda v: 1.0, "{1}·{3}^{4} = {0}·{2}^{4}", forms,
         )
     )  # fmt: skip
-    work = builder.variable(f"{content.id}.{piece.label}", "expansion_work", CONTENT["expansion_work"])
+    work = _work_variable(builder, content, piece)
     mass = builder.content_quantity(content, "mass")
 
     def specific(v: Values) -> Value:
@@ -241,7 +244,7 @@ def _with_mass_exchange(builder: Builder, content: Content, piece: Piece) -> int
         pressure = _external_pressure(builder, content, piece)
         name = f"mechanical equilibrium of {content.id}"
     builder.equation(name, Term(1.0, ((p2, 1),)), Term(-1.0, ((pressure, 1),)))
-    work = builder.variable(f"{content.id}.{piece.label}", "expansion_work", CONTENT["expansion_work"])
+    work = _work_variable(builder, content, piece)
     terms = (Term(1.0, ((work, 1),)), Term(1.0, ((pressure, 1), (V2, 1))), Term(-1.0, ((pressure, 1), (V1, 1))))
     builder.equation(f"expansion work of {content.id}", *terms)
     return work

@@ -44,8 +44,8 @@ STREAM: Mapping[str, Trait] = {
     "molar_flow": Trait("molar_flow", 100.0),
     "volume_flow": Trait("volume_flow", 1.0),
     "normal_volume_flow": Trait("normal_volume_flow", 1.0),
-    "velocity": Trait("velocity", 10.0, 0.0, 2e4),
-    "bore": Trait("length", 0.1, 1e-6, 100.0),
+    "velocity": Trait("velocity", 10.0, 0.0),
+    "bore": Trait("length", 0.1, 1e-6),
     "elevation": Trait("length", 10.0),
 }
 

@@ -98,7 +98,8 @@ def _isentropic(builder: Builder, relation: Relation) -> None:
 
     def residual(v: Values) -> Value:
         actual, ideal = v[order[2]] - v[order[1]], v[order[3]] - v[order[1]]
-        return _pick(compresses(v), v[order[0]] * actual - ideal, v[order[0]] * ideal - actual)
+        # signed so that it does not jump where the pressures meet and the machine changes its direction
+        return _pick(compresses(v), v[order[0]] * actual - ideal, actual - v[order[0]] * ideal)
 
     def efficiency(v: Values) -> Value:
         actual, ideal = v[order[2]] - v[order[1]], v[order[3]] - v[order[1]]
@@ -165,7 +166,8 @@ def _polytropic(builder: Builder, relation: Relation) -> None:
 
     def residual(v: Values) -> Value:
         rise, friction = work_and_friction(v)
-        return _pick(v[order[8]] > v[order[7]], v[eta] * rise - (rise - friction), v[eta] * (rise - friction) - rise)
+        ideal = rise - friction
+        return _pick(v[order[8]] > v[order[7]], v[eta] * rise - ideal, rise - v[eta] * ideal)
 
     def magnitude(v: Values) -> Value:
         return abs(v[order[2]] - v[order[1]])

@@ -88,11 +88,11 @@ def _isentropic_flux(fluid: Fluid, p1: float, h1: float, s1: float, p2: float) -
 def _per_row(function: Callable[..., float], *arguments: Value) -> Value:
     """The function over columns where any argument is one; NaN where it refuses a row."""
     if not any(isinstance(a, np.ndarray) for a in arguments):
-        return function(*arguments)
+        return function(*arguments) if all(math.isfinite(a) for a in arguments) else math.nan
     rows: list[float] = []
     for row in np.broadcast(*arguments):
         try:
-            rows.append(function(*(float(a) for a in row)))
+            rows.append(function(*row) if all(math.isfinite(a) for a in row) else math.nan)
         except CaseError:
             rows.append(math.nan)
     return np.array(rows)
