@@ -30,8 +30,15 @@ def main() -> int:
     parser.add_argument("--once", action="store_true", help="stop after the answer")
     parser.add_argument("--port", type=int, default=8080, help="port to serve on; a free one where it is taken")
     options = parser.parse_args()
-    port = free_port(options.port)
     signal.signal(signal.SIGTERM, _stop)
+    try:
+        return demonstrate(free_port(options.port), options.once)
+    except KeyboardInterrupt:
+        return 0
+
+
+def demonstrate(port: int, once: bool) -> int:
+    """Serve, solve and print; then serve on until the service ends, or stop. Returns the exit status."""
     with serving(port) as server:
         if not ready(port, server):
             print("The service did not start; its messages are above.", file=sys.stderr)
@@ -42,12 +49,10 @@ def main() -> int:
             print(body.decode(), file=sys.stderr)
             return 1
         print(readable(loads(body)), flush=True)
-        if options.once:
+        if once:
             return 0
         print(f"Serving on http://{HOST}:{port}, for reading at http://{HOST}:{port}/docs. Ctrl-C stops.", flush=True)
-        with contextlib.suppress(KeyboardInterrupt):
-            return server.wait()
-    return 0
+        return server.wait()
 
 
 @contextlib.contextmanager
