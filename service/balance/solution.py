@@ -98,13 +98,25 @@ class EntropyCheck:
     why: str
 
 
+SignalWord: TypeAlias = Literal["NOTICE", "CAUTION", "WARNING", "DANGER"]
+
+
 @dataclass(frozen=True, slots=True)
 class Advisory:
+    """A caution. of: the address or item it is about; amounts: (kind, value [SI]) for {0}, {1} in the message."""
+
     code: str
-    signal_word: Literal["NOTICE", "CAUTION", "WARNING", "DANGER"]
+    signal_word: SignalWord
     message: str
     of: str
     basis: str
+    amounts: tuple[tuple[str, float], ...] = ()
+
+    def told(self, show: Callable[[str, float], str]) -> str:
+        """The message with its amounts written by `show(kind, value)`."""
+        if not self.amounts:
+            return self.message
+        return self.message.format(*(show(kind, value) for kind, value in self.amounts))
 
 
 @dataclass(frozen=True, slots=True)

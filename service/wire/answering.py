@@ -9,6 +9,7 @@ from __future__ import annotations
 import math
 import re
 from collections.abc import Sequence
+from dataclasses import replace
 from statistics import NormalDist
 from typing import Any
 
@@ -67,9 +68,15 @@ class Answer:
         if self.full:
             answer["steps"] = [self._step(step, str(number)) for number, step in enumerate(solution.steps, 1)]
         answer["checks"] = self._checks()
-        answer["advisories"] = {"items": ADVISORIES.dump(solution.advisories), "deference": DEFERENCE}
+        answer["advisories"] = {
+            "items": ADVISORIES.dump([replace(a, message=a.told(self._roughly)) for a in solution.advisories]),
+            "deference": DEFERENCE,
+        }
         answer["provenance"] = provenance(solution.sources, request)
         return answer
+
+    def _roughly(self, kind: str, value: float) -> str:
+        return self.presenter.text(kind, value, digits=5)
 
     # -- answers and states ------------------------------------------------------------------------------------
 

@@ -69,13 +69,13 @@ class Presenter:
         """A difference or uncertainty [SI] in the unit of the kind, without the unit's zero."""
         return rounded(value / self.units.difference_factor(self.unit(kind, symbol)))
 
-    def text(self, kind: str, value: float) -> str:
+    def text(self, kind: str, value: float, digits: int = 7) -> str:
         """`40 bar`, for sentences."""
         if not math.isfinite(value):
             return "not a number"
         unit = self.units.display(kind, self.system)
         zero, factor = self.zero_and_factor(unit)
-        return f"{rounded((value - zero) / factor, 7):.7g} {unit.symbol}".removesuffix(" -")
+        return f"{rounded((value - zero) / factor, digits):.{digits}g} {unit.symbol}".removesuffix(" -")
 
     def in_formula(self, value: float, kind: str) -> str:
         """`(3.33333333 kg/s)`: a number with a unit that multiplies out with the others of its system."""
