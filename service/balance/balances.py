@@ -11,6 +11,7 @@ from service.balance.properties import STATE, TRANSFER
 from service.engine.model import Polynomial, Term
 from service.errors import SchemaViolation
 
+FLOWS = {"mass_flow", "dry_air_flow", "molar_flow", "volume_flow", "normal_volume_flow"}
 _PRESSURE_SAYING = {"p", "x", "superheat", "subcooling"}
 
 
@@ -193,6 +194,7 @@ def give_starting_points(builder: Builder) -> None:
     flow = max((abs(v) for v in by_suffix.get("mass_flow", ()) if v), default=1.0)
     for variable in builder.model.variables:
         name = variable.name.rpartition(".")[2]
+        variable.zero_is_trivial = name in FLOWS
         if name in ("mass_flow", "dry_air_flow"):
             variable.start = variable.scale = flow
         else:

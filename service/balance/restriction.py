@@ -91,8 +91,9 @@ def _per_row(function: Callable[..., float], *arguments: Value) -> Value:
         return function(*arguments) if all(math.isfinite(a) for a in arguments) else math.nan
     rows: list[float] = []
     for row in np.broadcast(*arguments):
+        numbers = [float(a) for a in row]
         try:
-            rows.append(function(*row) if all(math.isfinite(a) for a in row) else math.nan)
+            rows.append(function(*numbers) if all(math.isfinite(a) for a in numbers) else math.nan)
         except CaseError:
             rows.append(math.nan)
     return np.array(rows)

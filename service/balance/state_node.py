@@ -32,6 +32,10 @@ class StateNode:
     def choose(self, known: Collection[str]) -> tuple[str, ...] | None:
         return self.fluid.inputs(known)
 
+    def is_steep(self, inputs: tuple[str, ...]) -> bool:
+        """Without p or x: T with h or u hardly tells the pressure of a liquid or of a thin gas."""
+        return not {"p", "x"} & set(inputs)
+
     def evaluate(self, inputs: tuple[str, ...], values: tuple[float, ...]) -> Mapping[str, float]:
         try:
             state = self.fluid.state(inputs, values, self._extras())

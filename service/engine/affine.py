@@ -7,8 +7,10 @@ solved as if it were, and a row counts as solved only where its equations then h
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 
 import numpy as np
+import numpy.typing as npt
 
 from service.engine.model import Column, Model, Values
 from service.engine.plan import EquationCloses, Iterated, Rearranged
@@ -46,9 +48,20 @@ def solve_affine(model: Model, step: Iterated, values: Values, rows: int) -> Col
             point = point + _solve(jacobian, -off.T, rows).T
         off, scale = _residuals(model, step, values, point, rows)
         holds = np.all(np.abs(off) <= HOLDS * scale, axis=0) & np.all(np.isfinite(point), axis=0)
+    holds &= ~_trivial(model, assumed, point)
     lower = np.array([model.variables[v].lower for v in assumed])[:, None]
     upper = np.array([model.variables[v].upper for v in assumed])[:, None]
     return np.asarray(holds & np.all((point >= lower) & (point <= upper), axis=0), dtype=float)
+
+
+def _trivial(model: Model, assumed: Sequence[int], point: Column) -> npt.NDArray[np.bool_]:
+    """Rows in which nothing flows: a zero that many balances have, to be looked into by a search."""
+    trivial = np.zeros(point.shape[1], dtype=bool)
+    for variable, column in zip(assumed, point, strict=True):
+        v = model.variables[variable]
+        if v.zero_is_trivial:
+            trivial |= np.abs(column) <= 1e-9 * v.scale
+    return trivial
 
 
 def _guess(model: Model, variable: int) -> float:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 import time
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -13,7 +13,7 @@ from service.engine.affine import is_algebraic, solve_affine
 from service.engine.model import TINY, Column, Model, Value, Values
 from service.engine.plan import Closing, EquationCloses, Iterated, Lookup, Plan, Rearranged, Step
 from service.engine.roots import ACCEPTED, Nearest, bracketed_root, damped_newton
-from service.errors import CaseError, Issue, NoSolution, NotConverged, TimeBudgetExceeded
+from service.errors import CaseError, Issue, NoSolution, NotConverged, TimeBudgetExceeded, UnderSpecified
 
 
 @dataclass(slots=True)
@@ -109,7 +109,20 @@ class _Executor:
         if holds:
             for variable in step.variables:
                 self.values[variable] = float(np.asarray(self.values[variable]).item())
+            if len(step.assumed) == 1 and step.assumed[0] not in self.warm:
+                root = self.values[step.assumed[0]]
+                self._require_influence(step, self._missing(step), root)
+                self._missing(step)(root)
         return holds
+
+    def _missing(self, step: Iterated) -> Callable[[float], float]:
+        """What the closing of a block with one assumed variable lacks, as a function of that variable."""
+
+        def function(x: float) -> float:
+            self.values[step.assumed[0]] = x
+            return self._evaluate(step)[0]
+
+        return function
 
     def _evaluate(self, step: Iterated) -> list[float]:
         if self.deadline is not None and time.monotonic() > self.deadline:
@@ -129,26 +142,44 @@ class _Executor:
     def _bracketed(self, step: Iterated) -> None:
         (variable,) = step.assumed
         v = self.model.variables[variable]
-
-        def function(x: float) -> float:
-            self.values[variable] = x
-            return self._evaluate(step)[0]
-
-        start = self._start(variable)
-        width = 0.01 * v.scale if variable in self.warm else 0.05 * v.scale
+        function = self._missing(step)
+        start, warm = self._start(variable), variable in self.warm
+        width = (0.01 if warm else 0.05) * v.scale
+        trivial = 1e-9 * v.scale if v.zero_is_trivial else -1.0
         try:
-            root = bracketed_root(function, v.lower, v.upper, start, width)
+            root = bracketed_root(function, v.lower, v.upper, start, width, trivial)
+            if isinstance(root, Nearest):
+                raise self._no_root(step, v.name, root)
+            if not warm:
+                self._require_influence(step, function, root)
         except _OutOfTime:
             raise _budget(v.name) from None
-        if isinstance(root, Nearest):
-            raise self._no_root(step, v.name, root)
         function(root)
 
+    def _require_influence(self, step: Iterated, function: Callable[[float], float], root: float) -> None:
+        """Raise UnderSpecified where another value, a hundredth away, satisfies the equation as well."""
+        v = self.model.variables[step.assumed[0]]
+        away = 0.01 * (abs(root) or v.scale)
+        for other in (root - away, root + away):
+            if not v.lower <= other <= v.upper:
+                continue
+            try:
+                flat = abs(function(other)) <= ACCEPTED
+            except CaseError:
+                continue
+            if flat:
+                what = self._what(step.closings[0])
+                detail = f"{v.name} cannot be found: the {what} holds for other values of it too."
+                hint = "Give its value, or something that depends on it."
+                raise UnderSpecified(detail, [Issue(detail, v.name, hint)])
+
+    def _what(self, closing: Closing) -> str:
+        if isinstance(closing, EquationCloses):
+            return self.model.equations[closing.equation].name
+        return self.model.nodes[closing.node].name
+
     def _no_root(self, step: Iterated, name: str, nearest: Nearest) -> NoSolution:
-        closing = step.closings[0]
-        what = self.model.equations[closing.equation].name if isinstance(closing, EquationCloses) else (
-            f"{self.model.nodes[closing.node].name}"
-        )  # fmt: skip
+        what = self._what(step.closings[0])
         if math.isnan(nearest.argument):
             reason = nearest.refusal.detail if nearest.refusal else "nowhere could the equations be evaluated."
             return NoSolution(f"No value of {name} satisfies the {what}: {reason}", address=name)

@@ -30,7 +30,10 @@ TINY = 1e-300
 
 @dataclass(slots=True)
 class Variable:
-    """name: the address; scale: a typical magnitude; lower, upper: physical bounds for a search; all in SI."""
+    """name: the address; scale: a typical magnitude; lower, upper: physical bounds for a search; all in SI.
+
+    zero_is_trivial: nothing flowing satisfies many balances, and is taken for an answer only where there is no other.
+    """
 
     name: str
     scale: float = 1.0
@@ -38,6 +41,7 @@ class Variable:
     upper: float = float("inf")
     near: float | None = None
     start: float | None = None
+    zero_is_trivial: bool = False
 
 
 class Equation(Protocol):
@@ -291,6 +295,9 @@ class Node(Protocol):
 
     def choose(self, known: Collection[str]) -> tuple[str, ...] | None:
         """The members to start from, out of the known ones; None where they do not suffice."""
+
+    def is_steep(self, inputs: tuple[str, ...]) -> bool:
+        """Whether the members hardly change along some way on the surface that the inputs do not tell apart well."""
 
     def evaluate(self, inputs: tuple[str, ...], values: tuple[float, ...]) -> Mapping[str, float]:
         """Every member's value. Raises CaseError where the surface does not reach."""

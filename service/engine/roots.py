@@ -8,6 +8,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 import numpy.typing as npt
@@ -19,6 +20,9 @@ Vector = npt.NDArray[np.float64]
 ACCEPTED = 1e-9
 """Largest residual, relative to its scale, that counts as a solution."""
 SCAN_POINTS = 48
+EDGE_HALVINGS = 40
+"""How closely the edge of what the function covers is looked at: a solution may lie on it (saturated air)."""
+TINY_STEP = 1e-3
 
 
 @dataclass(frozen=True, slots=True)
@@ -51,22 +55,29 @@ class _Watched:
 
 
 def bracketed_root(
-    function: Callable[[float], float], lower: float, upper: float, start: float | None, step: float
+    function: Callable[[float], float],
+    lower: float,
+    upper: float,
+    start: float | None,
+    step: float,
+    trivial: float = -1.0,
 ) -> float | Nearest:
     """A zero of `function` in [lower, upper]: the one nearest to `start` in the sense of the search below.
 
     From the start (else from the middle) the search widens to both sides until the sign changes; if that fails, the
     whole interval is scanned, upwards. brentq then closes in to the last bits. A sign change across a jump is no
-    zero and is passed over. The order of the search is fixed, so that the same case has the same answer.
+    zero and is passed over; so is a zero of size `trivial` or less, unless there is no other. The order of the search
+    is fixed, so that the same case has the same answer.
     """
     watched = _Watched(function)
-    for bracket in _brackets(watched, lower, upper, start, step):
-        a, b = bracket
-        if a == b:
-            return a
-        root = _close_in(watched, a, b)
-        if root is not None:
+    fallback: float | None = None
+    for a, b in _brackets(watched, lower, upper, start, step):
+        root = a if a == b else _close_in(watched, a, b)
+        if root is not None and abs(root) > trivial:
             return root
+        fallback = root if fallback is None else fallback
+    if fallback is not None:
+        return fallback
     if watched.residual <= ACCEPTED:
         return watched.best
     return Nearest(watched.best, watched.residual, watched.refusal)
@@ -101,28 +112,62 @@ def _brackets(
     y0 = watched(x0)
     if y0 == 0.0:
         yield x0, x0
-    edges = [[x0, y0], [x0, y0]]
+    edges = [(x0, y0), (x0, y0)]
     width = step
     for _ in range(60):
         open_sides = [side for side in (0, 1) if (edges[0][0] > lower, edges[1][0] < upper)[side]]
         if not open_sides:
             break
         for side in open_sides:
-            x, y = edges[side]
+            x, _ = edges[side]
             new = max(x - width, lower) if side == 0 else min(x + width, upper)
-            value = watched(new)
-            if value == 0.0:
-                yield new, new
-            elif y * value < 0:
-                yield (new, x) if side == 0 else (x, new)
-            edges[side] = [new, value]
+            there = new, watched(new)
+            yield from _between(watched, edges[side], there)
+            edges[side] = there
         width *= 1.8
+    for grid in _grids(lower, upper, step):
+        points = [(x, watched(x)) for x in grid]
+        for one, next_one in pairwise(points):
+            yield from _between(watched, one, next_one)
+
+
+def _grids(lower: float, upper: float, step: float) -> Iterator[Sequence[float]]:
+    """Where to look when widening found nothing: evenly, then by decades from small to large."""
+    finite = math.isfinite(lower) and math.isfinite(upper)
     if finite:
-        grid = np.linspace(lower, upper, SCAN_POINTS)
-        values = [watched(float(x)) for x in grid]
-        for i in range(SCAN_POINTS - 1):
-            if values[i] * values[i + 1] <= 0:
-                yield float(grid[i]), float(grid[i + 1])
+        yield np.linspace(lower, upper, SCAN_POINTS).tolist()
+    if finite and upper < 1e3 * max(lower, TINY_STEP * step):
+        return
+    decades = (step * 10.0 ** np.arange(-5.0, 5.001, 0.125)).tolist()
+    both = [*(-x for x in reversed(decades)), 0.0, *decades]
+    if lower > 0.0:  # by decades above the lower end
+        top = upper if math.isfinite(upper) else 1e8 * lower
+        yield np.geomspace(lower, top, 2 * SCAN_POINTS).tolist()
+    else:
+        yield [x for x in both if lower <= x <= upper]
+
+
+def _between(watched: _Watched, one: tuple[float, float], other: tuple[float, float]) -> Iterator[tuple[float, float]]:
+    """The interval between two points where the sign changes in it; up to the edge where one of them is refused."""
+    (a, ya), (b, yb) = one, other
+    if yb == 0.0:
+        yield b, b
+    elif ya * yb < 0.0:
+        yield min(a, b), max(a, b)
+    if math.isnan(ya) == math.isnan(yb):
+        return
+    if math.isnan(ya):
+        (a, ya), b = (b, yb), a
+    for _ in range(EDGE_HALVINGS):
+        middle = 0.5 * (a + b)
+        value = watched(middle)
+        if math.isnan(value):
+            b = middle
+        elif ya * value <= 0.0:
+            yield min(a, middle), max(a, middle)
+            return
+        else:
+            a, ya = middle, value
 
 
 def damped_newton(

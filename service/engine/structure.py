@@ -18,7 +18,7 @@ from scipy.sparse.csgraph import connected_components, maximum_bipartite_matchin
 
 from service.engine.chain import Chain, Incidence
 from service.engine.model import Model
-from service.engine.plan import Iterated, Plan, Step
+from service.engine.plan import Iterated, Lookup, Plan, Step
 from service.errors import Issue, UnderSpecified
 
 MAX_CANDIDATES = 24
@@ -210,11 +210,12 @@ def _candidates(model: Model, incidence: Incidence, block: Collection[int]) -> l
 
 
 def _cost(model: Model, steps: Sequence[Step], candidate: int) -> tuple[float, ...]:
-    """Nested iterations, then an unbounded search, then the number of steps."""
+    """Nested iterations, an unbounded search, look-ups from poor inputs, the number of steps, what nobody asks for."""
     nested = sum(isinstance(step, Iterated) for step in steps)
     variable = model.variables[candidate]
     unbounded = not (np.isfinite(variable.lower) and np.isfinite(variable.upper))
-    return nested, unbounded, len(steps)
+    steep = sum(isinstance(step, Lookup) and model.nodes[step.node].is_steep(step.inputs) for step in steps)
+    return nested, unbounded, steep, len(steps), candidate not in model.wanted
 
 
 def _under_specified(model: Model, parts: _Parts, missing: set[int]) -> UnderSpecified:

@@ -31,6 +31,9 @@ class Disc:
                 return pair
         return None
 
+    def is_steep(self, inputs: tuple[str, ...]) -> bool:
+        return False
+
     def evaluate(self, inputs: tuple[str, ...], values: tuple[float, ...]) -> Mapping[str, float]:
         one, other = values
         if inputs == ("r", "a"):
