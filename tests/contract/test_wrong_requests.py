@@ -8,6 +8,8 @@ from typing import Any
 import pytest
 from flask.testing import FlaskClient
 
+from service.app import create_app
+from service.settings import Settings
 from tests.contract.promises import assert_problem, let_down
 
 Change = Callable[[dict[str, Any]], Any]
@@ -78,3 +80,11 @@ def test_surplus_data_that_agree_are_compared_and_not_refused(client: FlaskClien
     answer = client.post("/v1/balances", json=case).get_json()
     assert answer["status"] == "solved"
     assert len(answer["checks"]["surplus"]) == 1
+
+
+def test_a_solution_beyond_the_time_budget_is_given_up_and_told() -> None:
+    impatient = create_app(Settings(time_budget=0.001)).test_client()
+    values = [40.0 + 0.001 * row for row in range(5_000)]
+    request = {"case": let_down(), "readings": {"inlet.p": {"unit": "barg", "values": values}}}
+    problem = assert_problem(impatient.post("/v1/balances/series", json=request), 503, "time-budget-exceeded")
+    assert problem["title"] == "The time budget is used up"
