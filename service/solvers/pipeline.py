@@ -13,13 +13,15 @@ from service.balance.builder import BuiltCase
 from service.balance.case import Case
 from service.balance.network import fluid_keys
 from service.balance.solution import SeriesResult, Solution, StructureReport, SurplusCheck
-from service.engine.execute import Run, agreement_columns, run, run_columns, surplus_residuals
+from service.engine.columns import agreement_columns, run_columns
+from service.engine.execute import Run, run, surplus_residuals
 from service.engine.model import Column
 from service.engine.plan import Plan
 from service.engine.structure import compile_plan
 from service.errors import CaseError, Contradictory, Issue, SchemaViolation, UnderSpecified
 from service.fluids.catalogue import FluidCatalogue
 from service.fluids.protocol import Fluid, FluidSpec
+from service.solvers.plans import KeptPlans, structure_of
 from service.solvers.report import report, structure_report, surplus_check
 from service.trust.second_law import entropy_checks
 from service.trust.uncertainty import uncertainties
@@ -29,6 +31,9 @@ EXTENSIVE = {
     "mass", "volume", "normal_volume", "energy",
 }  # fmt: skip
 """Kinds of quantity that fix how much there is or flows; without any, a case is balanced for a unit of mass."""
+
+
+_KEPT = KeptPlans()
 
 
 def solve(case: Case, catalogue: FluidCatalogue, deadline: float | None = None) -> Solution:
@@ -52,8 +57,14 @@ def check(case: Case, catalogue: FluidCatalogue) -> StructureReport:
 def prepare(case: Case, catalogue: FluidCatalogue) -> tuple[BuiltCase, Plan]:
     """The case's model and its plan; per unit of mass where nothing says how much there is."""
     fluids = resolve_fluids(case, catalogue)
+    key = structure_of(case, fluids)
+    kept = _KEPT.find(key, case)
+    if kept is not None:
+        return kept
     built = _build(case, fluids)
-    return built, _plan(built)
+    plan = _plan(built)
+    _KEPT.keep(key, built, plan)
+    return built, plan
 
 
 def _build(case: Case, fluids: Mapping[str, Fluid | None], also: Sequence[str] = ()) -> BuiltCase:
