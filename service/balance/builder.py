@@ -135,6 +135,7 @@ class Builder:
             variable.upper = min(variable.upper, quantity.between[1])
         if quantity.near is not None:
             variable.near = quantity.near
+        variable.steered = quantity.near is not None or quantity.between is not None
 
     def address(self, address: str) -> int:
         """The variable that an address names; flows and state properties come into being as they are mentioned."""

@@ -1,22 +1,19 @@
-"""Running a plan, on one set of numbers or on columns of them."""
+"""Running a plan on one set of numbers (`columns` runs it on many)."""
 
 from __future__ import annotations
 
 import math
 import time
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 
 import numpy as np
 
 from service.engine.affine import is_algebraic, solve_affine
-from service.engine.model import TINY, Column, Model, Value, Values
+from service.engine.model import TINY, Column, Model, Values
 from service.engine.plan import Closing, EquationCloses, Iterated, Lookup, Plan, Rearranged, Step
 from service.engine.roots import ACCEPTED, Nearest, bracketed_root, damped_newton
 from service.errors import CaseError, Issue, NoSolution, NotConverged, TimeBudgetExceeded, UnderSpecified
-
-PIECE = 2_000
-"""Rows looked up between two looks at the clock: some tenths of a second where a flash is slow."""
 
 
 @dataclass(slots=True)
@@ -31,7 +28,7 @@ class Run:
     """Row → why it has no answer (column runs only)."""
 
 
-class _Executor:
+class Executor:
     """Executes steps on one shared list of values; `deadline` is a time.monotonic() value or None."""
 
     def __init__(self, model: Model, values: Values, deadline: float | None) -> None:
@@ -150,7 +147,7 @@ class _Executor:
         width = (0.01 if warm else 0.05) * v.scale
         trivial = 1e-9 * v.scale if v.zero_is_trivial else -1.0
         try:
-            root = bracketed_root(function, v.lower, v.upper, start, width, trivial)
+            root = bracketed_root(function, v.lower, v.upper, start, width, trivial, self._distance(step, function))
             if isinstance(root, Nearest):
                 raise self._no_root(step, v.name, root)
             if not warm:
@@ -158,6 +155,24 @@ class _Executor:
         except _OutOfTime:
             raise _budget(v.name) from None
         function(root)
+
+    def _distance(self, step: Iterated, function: Callable[[float], float]) -> Callable[[float], float] | None:
+        """How far a solution is from what the user expects of the variables that the block finds on the way."""
+        steered = [v for v in step.variables if v not in step.assumed and self.model.variables[v].steered]
+        if not steered:
+            return None
+
+        def distance(root: float) -> float:
+            function(root)
+            total = 0.0
+            for number in steered:
+                v, value = self.model.variables[number], self.values[number]
+                if not v.lower <= value <= v.upper:
+                    return math.inf
+                total += abs(value - v.near) / v.scale if v.near is not None else 0.0
+            return total
+
+        return distance
 
     def _require_influence(self, step: Iterated, function: Callable[[float], float], root: float) -> None:
         """Raise UnderSpecified where another value, a hundredth away, satisfies the equation as well."""
@@ -250,7 +265,7 @@ def run(plan: Plan, deadline: float | None = None) -> Run:
     values: Values = [math.nan] * len(plan.model.variables)
     for variable, value in plan.model.given.items():
         values[variable] = value
-    executor = _Executor(plan.model, values, deadline)
+    executor = Executor(plan.model, values, deadline)
     residuals = {}
     for number, step in enumerate(plan.steps):
         residual = executor.step(step)
@@ -261,138 +276,10 @@ def run(plan: Plan, deadline: float | None = None) -> Run:
 
 def surplus_residuals(plan: Plan, done: Run) -> list[tuple[Closing, float]]:
     """Relative disagreement of everything that is given more than once (scalar runs)."""
-    executor = _Executor(plan.model, done.values, None)
+    executor = Executor(plan.model, done.values, None)
     executor.lookups = done.lookups
     out = []
     for closing in plan.surplus:
         residual, scale = executor.closing(closing)
         out.append((closing, abs(residual) / scale))
     return out
-
-
-def run_columns(plan: Plan, columns: Mapping[int, Column], rows: int, deadline: float | None = None) -> Run:
-    """Execute the plan with some given variables replaced by columns; a bad row costs only its own row."""
-    values: Values = [math.nan] * len(plan.model.variables)
-    for variable, value in plan.model.given.items():
-        values[variable] = value
-    for variable, column in columns.items():
-        values[variable] = column
-    done = Run(values)
-    runner = _ColumnRunner(plan.model, done, rows, deadline)
-    for step in plan.steps:
-        runner.step(step)
-    return done
-
-
-class _ColumnRunner:
-    """Steps on columns: algebra in numpy, look-ups by the node's own column call, iterations row by row."""
-
-    def __init__(self, model: Model, done: Run, rows: int, deadline: float | None) -> None:
-        self.model = model
-        self.done = done
-        self.values = done.values
-        self.rows = rows
-        self.deadline = deadline
-
-    def step(self, step: Step) -> None:
-        if isinstance(step, Lookup):
-            self._lookup(step.node, step.inputs, step.found)
-        elif isinstance(step, Rearranged):
-            with np.errstate(all="ignore"):
-                self.values[step.variable] = self._solve(step)
-        else:
-            self._iterate(step)
-
-    def _solve(self, step: Rearranged) -> Value:
-        try:
-            return self.model.equations[step.equation].solve(step.variable, self.values)
-        except ZeroDivisionError:
-            return math.nan
-
-    def _lookup(self, number: int, inputs: Sequence[str], found: Sequence[tuple[str, int]]) -> None:
-        node = self.model.nodes[number]
-        arguments = [self.values[node.members[name]] for name in inputs]
-        if not any(isinstance(a, np.ndarray) for a in arguments):
-            try:
-                result = node.evaluate(tuple(inputs), tuple(float(a) for a in arguments))
-            except CaseError as failure:
-                for row in range(self.rows):
-                    self.done.failures.setdefault(row, failure)
-                result = dict.fromkeys((name for name, _ in found), math.nan)
-            for name, variable in found:
-                self.values[variable] = result[name]
-            return
-        columns = tuple(np.broadcast_to(np.asarray(a, dtype=float), (self.rows,)) for a in arguments)
-        wanted = tuple(name for name, _ in found)
-        if not wanted:
-            return
-        results: dict[str, Column] = {name: np.full(self.rows, math.nan) for name in wanted}
-        for first in range(0, self.rows, PIECE):
-            if self.deadline is not None and time.monotonic() > self.deadline:
-                raise TimeBudgetExceeded(
-                    f"The time budget was used up at row {first} of {self.rows}.",
-                    hint="Send fewer rows at a time, or use the command line.",
-                )
-            piece = slice(first, first + PIECE)
-            part, failures = node.evaluate_columns(tuple(inputs), tuple(c[piece] for c in columns), wanted)
-            for row, problem in failures.items():
-                self.done.failures.setdefault(first + row, problem)
-            for name in wanted:
-                results[name][piece] = part[name]
-        for name, variable in found:
-            self.values[variable] = results[name]
-
-    def _iterate(self, step: Iterated) -> None:
-        todo = list(range(self.rows))
-        outputs = {v: np.full(self.rows, math.nan) for v in step.variables}
-        if is_algebraic(step):
-            holds = solve_affine(self.model, step, self.values, self.rows) > 0
-            outputs = {v: np.where(holds, self.values[v], math.nan) for v in step.variables}
-            todo = np.flatnonzero(~holds).tolist()
-        row_values: Values = list(self.values)
-        varying = [(v, a) for v, a in enumerate(self.values) if isinstance(a, np.ndarray)]
-        executor = _Executor(self.model, row_values, self.deadline)
-        for row in todo:
-            if row in self.done.failures:
-                continue
-            for v, column in varying:
-                row_values[v] = float(column[row])
-            try:
-                executor.iterate(step)
-            except TimeBudgetExceeded:
-                raise
-            except CaseError as failure:
-                self.done.failures.setdefault(row, failure)
-                executor.warm.clear()
-                continue
-            for v, out in outputs.items():
-                out[row] = row_values[v]
-        for v, out in outputs.items():
-            self.values[v] = out
-
-
-def agreement_columns(plan: Plan, done: Run, rows: int) -> Column:
-    """Largest relative disagreement per row among the surplus equations (NaN rows stay NaN)."""
-    worst = np.zeros(rows)
-    with np.errstate(all="ignore"):
-        for closing in plan.surplus:
-            if isinstance(closing, EquationCloses):
-                equation = plan.model.equations[closing.equation]
-                relative = abs(equation.residual(done.values)) / equation.scale(done.values)
-            else:
-                relative = _member_disagreement(plan.model, closing.node, closing.inputs, closing.member, done, rows)
-            worst = np.fmax(worst, np.broadcast_to(relative, (rows,)))
-    return worst
-
-
-def _member_disagreement(
-    model: Model, number: int, inputs: tuple[str, ...], member: str, done: Run, rows: int
-) -> Column:
-    node = model.nodes[number]
-    arguments = tuple(
-        np.broadcast_to(np.asarray(done.values[node.members[name]], dtype=float), (rows,)) for name in inputs
-    )
-    found, _ = node.evaluate_columns(inputs, arguments, (member,))
-    held = done.values[node.members[member]]
-    size = np.maximum(np.maximum(np.abs(found[member]), np.abs(held)), TINY)
-    return np.asarray(np.abs(found[member] - held) / size, dtype=float)

@@ -33,6 +33,7 @@ class Variable:
     """name: the address; scale: a typical magnitude; lower, upper: physical bounds for a search; all in SI.
 
     zero_is_trivial: nothing flowing satisfies many balances, and is taken for an answer only where there is no other.
+    steered: the user says where to search for it (bounds or a value near), so that it should be the one searched for.
     """
 
     name: str
@@ -42,6 +43,7 @@ class Variable:
     near: float | None = None
     start: float | None = None
     zero_is_trivial: bool = False
+    steered: bool = False
 
 
 class Equation(Protocol):
@@ -173,11 +175,15 @@ class Polynomial:
         found = {exponent for term in self.terms for v, exponent in term.factors if v == variable}
         return found.pop() if len(found) == 1 else None
 
+    def _is_common_factor(self, variable: int) -> bool:
+        """Whether every one of several terms has it: the equation then only says that it is zero, or says nothing."""
+        return len(self.terms) > 1 and all(any(v == variable for v, _ in term.factors) for term in self.terms)
+
     def can_solve(self, variable: int) -> bool:
-        return self._exponent(variable) in (1, 2)
+        return self._exponent(variable) in (1, 2) and not self._is_common_factor(variable)
 
     def is_direct(self, variable: int) -> bool:
-        return self._exponent(variable) == 1
+        return self._exponent(variable) == 1 and not self._is_common_factor(variable)
 
     def solve(self, variable: int, values: Values) -> Value:
         rest: Value = 0.0

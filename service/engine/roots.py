@@ -61,21 +61,30 @@ def bracketed_root(
     start: float | None,
     step: float,
     trivial: float = -1.0,
+    distance: Callable[[float], float] | None = None,
 ) -> float | Nearest:
     """A zero of `function` in [lower, upper]: the one nearest to `start` in the sense of the search below.
 
     From the start (else from the middle) the search widens to both sides until the sign changes; if that fails, the
     whole interval is scanned, upwards. brentq then closes in to the last bits. A sign change across a jump is no
     zero and is passed over; so is a zero of size `trivial` or less, unless there is no other. The order of the search
-    is fixed, so that the same case has the same answer.
+    is fixed, so that the same case has the same answer. With a `distance`, all the zeros that the search meets are
+    compared and the least distant one is taken; one at an infinite distance does not count.
     """
     watched = _Watched(function)
     fallback: float | None = None
+    met: dict[float, float] = {}
     for a, b in _brackets(watched, lower, upper, start, step):
         root = a if a == b else _close_in(watched, a, b)
         if root is not None and abs(root) > trivial:
-            return root
-        fallback = root if fallback is None else fallback
+            if distance is None:
+                return root
+            met[root] = distance(root)
+        elif fallback is None:
+            fallback = root
+    if met:
+        nearest = min(met, key=met.__getitem__)
+        return nearest if math.isfinite(met[nearest]) else Nearest(nearest, math.inf, watched.refusal)
     if fallback is not None:
         return fallback
     if watched.residual <= ACCEPTED:

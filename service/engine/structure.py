@@ -199,23 +199,23 @@ def _tear(
 
 
 def _candidates(model: Model, incidence: Incidence, block: Collection[int]) -> list[int]:
-    """Variables worth assuming: bounded ones and well connected ones first."""
+    """Variables worth assuming: steered ones, bounded ones and well connected ones first."""
 
-    def rank(v: int) -> tuple[bool, int, str]:
+    def rank(v: int) -> tuple[bool, bool, int, str]:
         variable = model.variables[v]
         unbounded = not (np.isfinite(variable.lower) and np.isfinite(variable.upper))
-        return unbounded, -len(incidence.equations[v]) - len(incidence.nodes[v]), variable.name
+        return not variable.steered, unbounded, -len(incidence.equations[v]) - len(incidence.nodes[v]), variable.name
 
     return sorted(block, key=rank)[:MAX_CANDIDATES]
 
 
 def _cost(model: Model, steps: Sequence[Step], candidate: int) -> tuple[float, ...]:
-    """Nested iterations, an unbounded search, look-ups from poor inputs, the number of steps, what nobody asks for."""
+    """Nested iterations, then what is not steered, unbounded, looked up from poor inputs, long, and not asked for."""
     nested = sum(isinstance(step, Iterated) for step in steps)
     variable = model.variables[candidate]
     unbounded = not (np.isfinite(variable.lower) and np.isfinite(variable.upper))
     steep = sum(isinstance(step, Lookup) and model.nodes[step.node].is_steep(step.inputs) for step in steps)
-    return nested, unbounded, steep, len(steps), candidate not in model.wanted
+    return nested, not variable.steered, unbounded, steep, len(steps), candidate not in model.wanted
 
 
 def _under_specified(model: Model, parts: _Parts, missing: set[int]) -> UnderSpecified:

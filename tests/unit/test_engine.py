@@ -8,7 +8,8 @@ from collections.abc import Collection, Mapping
 import numpy as np
 import pytest
 
-from service.engine.execute import agreement_columns, run, run_columns, surplus_residuals
+from service.engine.columns import agreement_columns, run_columns
+from service.engine.execute import run, surplus_residuals
 from service.engine.model import Column, Function, Model, Polynomial, Show, Term
 from service.engine.plan import Iterated, Lookup, Rearranged
 from service.engine.sensitivity import sensitivities
