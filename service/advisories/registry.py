@@ -34,6 +34,7 @@ RULES: tuple[Rule, ...] = (
     Rule(("wet-expansion",), rules.wet_expansion),
     Rule(("flashing-liquid",), rules.flashing_liquid),
     Rule(("below-atmosphere",), rules.below_atmosphere),
+    Rule(("doubtful-phase",), rules.doubtful_phase),
     Rule(("freezing",), rules.freezing),
     Rule(("choked-flow",), rules.choked_flow),
     Rule(("near-model-limit",), rules.near_model_limit),

@@ -17,6 +17,7 @@ HOT_AIR = 453.15  # [K] 180 degC
 OIL_BASIS = "common practice: 180 degC at the discharge of oil-lubricated machines"
 NEAR_LIMIT = 0.02
 PERCEPTIBLE = 1e-9
+DOUBTFUL = 0.05  # [K] less than any plant thermometer tells
 SHEET = "safety data sheet of the substance (common practice)"
 RELEASES: tuple[tuple[Callable[[str], bool], str, SignalWord, str], ...] = (
     (TOXIC.__contains__, "toxic-release", "DANGER", "is toxic: evacuate, and approach only with breathing protection"),
@@ -263,6 +264,26 @@ def hot_compressed_air(context: Context) -> Iterator[Advisory]:
                 "at oil-lubricated discharge",
                 (("temperature", T),),
             )  # fmt: skip
+
+
+def doubtful_phase(context: Context) -> Iterator[Advisory]:
+    """A state told by p and T lies so close to saturation that its phase hangs on the last digit."""
+    for stream in context.built.case.streams:
+        p, T = context.value(f"{stream.id}.p"), context.value(f"{stream.id}.T")
+        fluid = context.built.fluids[stream.id]
+        told = {name for name, quantity in stream.quantities.items() if quantity.value is not None}
+        if fluid is None or p is None or T is None or not {"p", "T"} <= told or told & {"x", "h", "s", "u", "rho", "v"}:
+            continue
+        boiling = fluid.saturation(p=p)
+        if boiling is not None and abs(T - boiling) < DOUBTFUL:
+            state = context.state(stream.id)
+            phase = state.phase if state is not None else "one phase"
+            text = (
+                f"{stream.id} at {{0}} is within {{1}} of boiling and was taken as {phase}: the other phase is as likely. "
+                "Give x, or saturated, instead of T."
+            )
+            amounts = (("temperature", T), ("temperature_difference", abs(T - boiling)))
+            yield Advisory("doubtful-phase", "CAUTION", text, f"{stream.id}.T", "common practice", amounts)
 
 
 def freezing(context: Context) -> Iterator[Advisory]:

@@ -165,6 +165,10 @@ PAIRS: dict[str, tuple[Callable[[], Document], Callable[[], Document]]] = {
         lambda: machine("air", {"p": "1 bar", "T": "20 degC"}, {"p": "8 bar"}, eff="75 %"),
         lambda: machine("air", {"p": "1 bar", "T": "20 degC"}, {"p": "3 bar"}, eff="75 %"),
     ),
+    "doubtful-phase": (
+        lambda: valve(inlet={"p": "10 bar", "T": "179.88 degC"}, outlet={"p": "2 bar", "T": "?"}),
+        lambda: valve(inlet={"p": "10 bar", "saturated": "vapour"}, outlet={"p": "2 bar", "T": "?"}),
+    ),
     "freezing": (
         lambda: valve(inlet={"p": "3 bar", "T": "1 degC"}, outlet={"p": "2 bar", "T": "?"}),
         lambda: valve(inlet={"p": "3 bar", "T": "9 degC"}, outlet={"p": "2 bar", "T": "?"}),
