@@ -279,7 +279,7 @@ def doubtful_phase(context: Context) -> Iterator[Advisory]:
             state = context.state(stream.id)
             phase = state.phase if state is not None else "one phase"
             text = (
-                f"{stream.id} at {{0}} is within {{1}} of boiling and was taken as {phase}: the other phase is as likely. "
+                f"{stream.id} at {{0}} is within {{1}} of boiling and was taken as {phase}; the other is as likely. "
                 "Give x, or saturated, instead of T."
             )
             amounts = (("temperature", T), ("temperature_difference", abs(T - boiling)))
