@@ -198,4 +198,4 @@ def give_starting_points(builder: Builder) -> None:
         if name in ("mass_flow", "dry_air_flow"):
             variable.start = variable.scale = flow
         else:
-            variable.start = starts.get(name)
+            variable.start = starts.get(name, variable.start)

@@ -186,7 +186,10 @@ class Builder:
         if name in ("p", "T"):
             lower, upper = fluid.bounds(name)
             trait = Trait(trait.kind, trait.scale, lower, upper)
-        return self.variable(item, name, trait)
+        number = self.variable(item, name, trait)
+        if name == "h" and self.model.variables[number].start is None:
+            self.model.variables[number].start = 0.5 * sum(fluid.bounds("h"))
+        return number
 
     def fluid(self, stream: Stream) -> Fluid:
         """The property model of a stream. Raises SchemaViolation where none is known."""

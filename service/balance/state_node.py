@@ -36,6 +36,10 @@ class StateNode:
         """Without p or x: T with h or u hardly tells the pressure of a liquid or of a thin gas."""
         return not {"p", "x"} & set(inputs)
 
+    def is_blind(self, inputs: tuple[str, ...]) -> bool:
+        """p with T, which are the same in all wet states, and x, which says nothing of a single phase."""
+        return (set(inputs) == {"p", "T"} or "x" in inputs) and self.fluid.kind == "pure"
+
     def evaluate(self, inputs: tuple[str, ...], values: tuple[float, ...]) -> Mapping[str, float]:
         try:
             state = self.fluid.state(inputs, values, self._extras())

@@ -24,6 +24,8 @@ class Run:
     lookups: dict[int, Mapping[str, float]] = field(default_factory=dict)
     residuals: dict[int, float] = field(default_factory=dict)
     """Step number → relative residual of an iterated step."""
+    used: dict[int, Iterated] = field(default_factory=dict)
+    """Step number → the other way of tearing its block, where that one found the solution."""
     failures: dict[int, CaseError] = field(default_factory=dict)
     """Row → why it has no answer (column runs only)."""
 
@@ -37,6 +39,7 @@ class Executor:
         self.deadline = deadline
         self.lookups: dict[int, Mapping[str, float]] = {}
         self.warm: dict[int, float] = {}
+        self.used: dict[int, Iterated] = {}
 
     def step(self, step: Step) -> float:
         """Do one step on scalars; returns its relative residual (0 where nothing was iterated)."""
@@ -88,10 +91,29 @@ class Executor:
         if self.deadline is not None and time.monotonic() > self.deadline:
             raise TimeBudgetExceeded("The time budget was used up before the case was solved.")
         if not (is_algebraic(step) and self._linear(step)):
-            if len(step.assumed) == 1:
+            if len(step.assumed) > 1:
+                self._simultaneous(step)
+            elif step.instead is None:
                 self._bracketed(step)
             else:
-                self._simultaneous(step)
+                return self._either(step, step.instead)
+        return self._settled(step)
+
+    def _either(self, step: Iterated, instead: Iterated) -> float:
+        """The block torn in its first way, and in the other where that finds nothing."""
+        try:
+            self._bracketed(step)
+        except NoSolution as failure:
+            try:
+                self._bracketed(instead)
+            except NoSolution:
+                raise failure from None
+            self.used[id(step)] = instead
+            return self._settled(instead)
+        return self._settled(step)
+
+    def _settled(self, step: Iterated) -> float:
+        """Remember what was assumed, for the next row; returns the residual."""
         residual = 0.0
         for closing in step.closings:
             r, scale = self.closing(closing)
@@ -271,7 +293,8 @@ def run(plan: Plan, deadline: float | None = None) -> Run:
         residual = executor.step(step)
         if isinstance(step, Iterated):
             residuals[number] = residual
-    return Run(values, executor.lookups, residuals)
+    used = {i: executor.used[id(step)] for i, step in enumerate(plan.steps) if id(step) in executor.used}
+    return Run(values, executor.lookups, residuals, used=used)
 
 
 def surplus_residuals(plan: Plan, done: Run) -> list[tuple[Closing, float]]:

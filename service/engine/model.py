@@ -305,6 +305,9 @@ class Node(Protocol):
     def is_steep(self, inputs: tuple[str, ...]) -> bool:
         """Whether the members hardly change along some way on the surface that the inputs do not tell apart well."""
 
+    def is_blind(self, inputs: tuple[str, ...]) -> bool:
+        """Whether there are points of the surface that the inputs cannot tell."""
+
     def evaluate(self, inputs: tuple[str, ...], values: tuple[float, ...]) -> Mapping[str, float]:
         """Every member's value. Raises CaseError where the surface does not reach."""
 

@@ -55,6 +55,8 @@ class Iterated:
     closings: tuple[Closing, ...]
     variables: tuple[int, ...]
     """Everything the block finds, the assumed variables first."""
+    instead: Iterated | None = None
+    """The same block torn otherwise, for solutions that the first way cannot reach (wet vapour has one T at one p)."""
 
 
 Step: TypeAlias = Rearranged | Lookup | Iterated

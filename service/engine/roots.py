@@ -23,6 +23,8 @@ SCAN_POINTS = 48
 EDGE_HALVINGS = 40
 """How closely the edge of what the function covers is looked at: a solution may lie on it (saturated air)."""
 TINY_STEP = 1e-3
+SAMPLES = 400
+"""Points tried before a set of equations counts as refused everywhere."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -138,6 +140,10 @@ def _brackets(
         points = [(x, watched(x)) for x in grid]
         for one, next_one in pairwise(points):
             yield from _between(watched, one, next_one)
+    if math.isfinite(upper - lower) and math.isinf(watched.residual):  # nothing but refusals so far
+        points = [(x, watched(x)) for x in np.linspace(lower, upper, 16 * SCAN_POINTS).tolist()]
+        for one, next_one in pairwise(points):
+            yield from _between(watched, one, next_one)
 
 
 def _grids(lower: float, upper: float, step: float) -> Iterator[Sequence[float]]:
@@ -190,16 +196,39 @@ def damped_newton(
     """A zero of a vector function near `start`, and the largest residual there (relative, not yet judged).
 
     Newton steps with a difference Jacobian, halved until the residual falls and the function accepts the point;
-    several starts, each the first one stretched, before giving up with the best point seen.
+    several starts, each the first one stretched, before giving up with the best point seen; where the function accepts
+    none of them, the same again from points that it does accept.
     """
     best, best_residual = start, math.inf
-    for stretch in tries:
-        point, residual = _newton_from(function, np.clip(start * stretch, lower, upper), lower, upper, scale)
-        if residual < best_residual:
-            best, best_residual = point, residual
-        if best_residual <= ACCEPTED:
+    starts: Iterator[Vector] = iter([np.clip(start * stretch, lower, upper) for stretch in tries])
+    for _ in range(2):
+        for trial in starts:
+            point, residual = _newton_from(function, trial, lower, upper, scale)
+            if residual < best_residual:
+                best, best_residual = point, residual
+            if best_residual <= ACCEPTED:
+                return best, best_residual
+        if math.isfinite(best_residual):
             break
+        starts = _accepted(function, start, lower, upper)
     return best, best_residual
+
+
+def _accepted(
+    function: Callable[[Vector], Vector], start: Vector, lower: Vector, upper: Vector, most: int = 4
+) -> Iterator[Vector]:
+    """Points that the function accepts: bounded variables anywhere in their range, others some decades smaller."""
+    random = np.random.default_rng(0)  # a fixed sequence: the same case has the same answer
+    bounded = np.isfinite(lower) & np.isfinite(upper)
+    low, high = np.where(bounded, lower, 0.0), np.where(bounded, upper, 0.0)
+    for _ in range(SAMPLES):
+        share = random.random(len(start))
+        point = np.where(bounded, low + share * (high - low), np.clip(start * 10.0 ** (-4.0 * share), lower, upper))
+        if _attempt(function, point) is not None:
+            yield point
+            most -= 1
+            if not most:
+                return
 
 
 def _norm(residual: Vector) -> float:

@@ -10,7 +10,7 @@ from __future__ import annotations
 
 from collections import deque
 from collections.abc import Collection, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from scipy.sparse import csr_matrix
@@ -167,19 +167,38 @@ def _solve_block(model: Model, incidence: Incidence, chain: Chain, parts: _Parts
     nodes = {n for r in rows if (n := parts.rows[r].node) is not None and n not in chain.looked_up}
     block = set(variables) - chain.known
     assumed, trial = _tear(model, incidence, chain.known, block, equations, nodes)
-    closings = tuple(trial.surplus[: len(assumed)])
-    found = (*assumed, *sorted(block - set(assumed)))
+    step = _iterated(assumed, trial, block)
+    if len(assumed) == 1 and _blind(model, trial.steps):
+        other, sighted = _tear(model, incidence, chain.known, block, equations, nodes, sighted=True)
+        if len(other) == 1 and not _blind(model, sighted.steps):
+            step = replace(step, instead=_iterated(other, sighted, block))
     chain.used |= trial.used
     chain.looked_up |= trial.looked_up
-    chain.steps.append(Iterated(assumed, tuple(trial.steps), closings, found))
+    chain.steps.append(step)
     chain.surplus += trial.surplus[len(assumed) :]
     chain.learn(trial.known)
 
 
+def _iterated(assumed: tuple[int, ...], trial: Chain, block: set[int]) -> Iterated:
+    found = (*assumed, *sorted(block - set(assumed)))
+    return Iterated(assumed, tuple(trial.steps), tuple(trial.surplus[: len(assumed)]), found)
+
+
+def _blind(model: Model, steps: Sequence[Step]) -> int:
+    """How many look-ups start from inputs that cannot tell every state."""
+    return sum(isinstance(step, Lookup) and model.nodes[step.node].is_blind(step.inputs) for step in steps)
+
+
 def _tear(
-    model: Model, incidence: Incidence, known: set[int], block: set[int], equations: set[int], nodes: set[int]
+    model: Model,
+    incidence: Incidence,
+    known: set[int],
+    block: set[int],
+    equations: set[int],
+    nodes: set[int],
+    sighted: bool = False,
 ) -> tuple[tuple[int, ...], Chain]:
-    """The variables to assume, and the chain that follows from them."""
+    """The variables to assume, and the chain that follows from them; `sighted`: by look-ups that reach every state."""
     assumed: tuple[int, ...] = ()
     covered: set[int] = set()
     while True:
@@ -188,7 +207,8 @@ def _tear(
             trial = Chain(model, incidence, known | {*assumed, candidate}, equations, nodes)
             trial.start()
             missing = len(block - trial.known)
-            score = (missing, *_cost(model, trial.steps, candidate))
+            blind = _blind(model, trial.steps) if sighted else 0
+            score = (missing, blind, *_cost(model, trial.steps, candidate))
             if best is None or score < best[0]:
                 best = (score, (*assumed, candidate), trial)
         assert best is not None  # a block has at least one unknown, so there is a candidate

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 
 import numpy as np
 import numpy.typing as npt
@@ -40,6 +41,7 @@ def solve(case: Case, catalogue: FluidCatalogue, deadline: float | None = None) 
     """The solved case. Raises CaseError; `deadline` is a time.monotonic() value."""
     built, plan = prepare(case, catalogue)
     done = run(plan, deadline)
+    plan = replace(plan, steps=tuple(done.used.get(i, step) for i, step in enumerate(plan.steps)))
     checks = _checked_surplus(built, plan, done)
     solution = report(built, plan, done, checks)
     solution.entropy = entropy_checks(built, done)

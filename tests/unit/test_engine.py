@@ -35,6 +35,9 @@ class Disc:
     def is_steep(self, inputs: tuple[str, ...]) -> bool:
         return False
 
+    def is_blind(self, inputs: tuple[str, ...]) -> bool:
+        return False
+
     def evaluate(self, inputs: tuple[str, ...], values: tuple[float, ...]) -> Mapping[str, float]:
         one, other = values
         if inputs == ("r", "a"):
