@@ -212,3 +212,19 @@ def test_the_trap_blows_steam_at_the_choked_flux():
     doubled = json.loads(json.dumps(CASES["leaking-trap"]))
     doubled["relations"][0]["downstream_pressure"] = "4 barg"
     assert operations().solve(doubled)["answers"]["leak.mass_flow"]["value"] == pytest.approx(m, rel=1e-9)
+
+
+@pytest.mark.parametrize(("name", "of"), [("exchanger-ua", "rating.value"), ("turbine-efficiency", "efficiency.value")])
+def test_a_limit_that_is_crossed_is_told_with_its_reason(name, of):
+    (told,) = [item for item in answer(name)["advisories"]["items"] if item["code"] == "limit-crossed"]
+    assert told["of"] == of
+    assert CASES[name]["limits"][0]["why"] in told["message"]
+    assert told["signal_word"] in ("CAUTION", "WARNING")
+
+
+@every_case
+def test_a_limit_that_is_kept_is_not_told(name):
+    crossed = {item["of"] for item in answer(name)["advisories"]["items"] if item["code"] == "limit-crossed"}
+    limits = {limit["of"] for limit in CASES[name].get("limits", [])}
+    assert crossed <= limits
+    assert name in ("exchanger-ua", "turbine-efficiency") or not crossed
