@@ -41,8 +41,10 @@ def compare_http() -> None:
     ]
     bare = [sys.executable, "-m", "gunicorn", "-b", f"127.0.0.1:{ports[1]}", "-w", "2", "--preload",
             "--log-level", "error", "--no-control-socket", "tests.benchmarks.bare_endpoint:app"]  # fmt: skip
+    quiet = {**os.environ, "BALANCE_LOG_LEVEL": "warning"}  # the bare endpoint writes no access log either
     servers = [
-        subprocess.Popen(c, cwd=ROOT, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL) for c in (service, bare)
+        subprocess.Popen(c, cwd=ROOT, env=quiet, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL)
+        for c in (service, bare)
     ]
     try:
         wait_for(ports[0], "/readyz")
