@@ -37,6 +37,7 @@ RULES: tuple[Rule, ...] = (
     Rule(("doubtful-phase",), rules.doubtful_phase),
     Rule(("freezing",), rules.freezing),
     Rule(("choked-flow",), rules.choked_flow),
+    Rule(("flashing-discharge",), rules.flashing_discharge),
     Rule(("near-model-limit",), rules.near_model_limit),
     Rule(("reversed-flow",), rules.reversed_flow),
     Rule(("reversed-heat",), rules.uphill_heat),

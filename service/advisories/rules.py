@@ -173,6 +173,26 @@ def choked_flow(context: Context) -> Iterator[Advisory]:
             yield Advisory("choked-flow", "NOTICE", text, relation.id, "ISO 9300:2005 (value from memory)", amounts)
 
 
+def flashing_discharge(context: Context) -> Iterator[Advisory]:
+    """A liquid flashes behind its restriction; the flow was taken as that of a liquid, which is on the high side."""
+    for relation in context.built.case.relations:
+        if relation.kind != "restriction":
+            continue
+        stream = relation.streams["stream"]
+        state, p2 = context.state(stream), context.value(f"{relation.id}.downstream_pressure")
+        fluid = context.built.fluids[stream]
+        if state is None or fluid is None or p2 is None or state.phase != "liquid":
+            continue
+        boiling = fluid.saturation(T=state.properties["T"])
+        if boiling is not None and p2 < boiling:
+            text = (
+                f"The liquid boils below {{0}}, and the pressure behind {relation.id} is {{1}}: it flashes there. "
+                "The flow was taken as that of a liquid, which overstates it, the more the longer the passage."
+            )
+            amounts = (("pressure", boiling), ("pressure", p2))
+            yield Advisory("flashing-discharge", "NOTICE", text, relation.id, "common practice", amounts)
+
+
 def hot_surface(context: Context) -> Iterator[Advisory]:
     """A surface that loses heat to the surroundings is hot enough to burn."""
     for transfer in context.built.case.transfers:

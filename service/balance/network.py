@@ -87,18 +87,23 @@ def ends_by_boundary(case: Case) -> dict[str, list[End]]:
 def _possible(
     ends: Mapping[str, list[End]], held: Mapping[str, set[str]], stream: Stream, found: Mapping[str, str | None]
 ) -> set[str]:
-    """Fluids that neighbours suggest: those of the same side where there are any, else those of the boundary."""
+    """Fluids that neighbours suggest: of the same side where it has any, else of the boundary; one end may decide."""
     for same_side in (True, False):
-        choices: set[str] = set()
-        if not same_side:
-            choices = {key for b in (stream.source, stream.target) if b is not None for key in held[b]}
+        by_end = []
         for boundary, label in ((stream.source, stream.side_source), (stream.target, stream.side_target)):
-            for end in ends[boundary] if boundary is not None else ():
+            if boundary is None:
+                continue
+            choices = set() if same_side else set(held[boundary])
+            for end in ends[boundary]:
                 key = found[end.stream.id]
                 if key is not None and (not same_side or (label is not None and label == end.label)):
                     choices.add(key)
-        if choices:
-            return choices
+            by_end.append(choices)
+        decided = [choices for choices in by_end if len(choices) == 1]
+        if decided:
+            return set(decided[0])
+        if any(by_end):
+            return set().union(*by_end)
     return set()
 
 

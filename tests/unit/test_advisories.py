@@ -147,6 +147,10 @@ PAIRS: dict[str, tuple[Callable[[], Document], Callable[[], Document]]] = {
         lambda: leak("water", {"p": "11 bar", "saturated": "vapour"}),
         lambda: leak("water", {"p": "11 bar", "saturated": "vapour"}, behind="9 bar"),
     ),
+    "flashing-discharge": (
+        lambda: leak("water", {"p": "11 bar", "T": "150 degC"}),
+        lambda: leak("water", {"p": "11 bar", "T": "60 degC"}),
+    ),
     "hot-surface": (lambda: surface("75 degC"), lambda: surface("45 degC")),
     "scalding-release": (
         lambda: leak("water", {"p": "11 bar", "saturated": "vapour"}),

@@ -46,6 +46,18 @@ def test_a_side_decides_the_fluid_where_the_boundary_has_two() -> None:
     assert fluid_keys(c) == {"a": "water", "b": "water", "c": "oil", "d": "oil"}
 
 
+def test_the_end_with_one_fluid_decides_where_the_other_end_has_two() -> None:
+    c = case(
+        "pump hx",
+        stream("a", None, "pump", "water"),
+        stream("b", "pump", "hx"),
+        stream("c", None, "hx", "oil"),
+        stream("d", "hx", None, "oil"),
+        stream("e", "hx", None, "water"),
+    )
+    assert fluid_keys(c)["b"] == "water"
+
+
 def test_an_unclear_fluid_is_asked_for_by_name() -> None:
     c = case("hx", stream("a", None, "hx", "water"), stream("b", None, "hx", "oil"), stream("c", "hx", None))
     with pytest.raises(SchemaViolation, match="Stream c names no fluid") as error:
