@@ -1,4 +1,7 @@
-"""Cautions that go with an answer, and the rules that raise them. Signal words as in ANSI Z535.6."""
+"""Cautions that go with an answer, and the rules that raise them. Signal words as in ANSI Z535.6.
+
+DANGER will, WARNING could kill or injure seriously; CAUTION could injure slightly; NOTICE is not about injury.
+"""
 
 from __future__ import annotations
 
@@ -10,9 +13,20 @@ from service.engine.execute import Run
 
 SEVERITY: tuple[SignalWord, ...] = ("DANGER", "WARNING", "CAUTION", "NOTICE")
 
+DEFERENCE = (
+    "This is a screening calculation on the numbers given. It does not replace local codes, the maker's instructions "
+    "or the judgement of a licensed professional."
+)
+"""Standing words of every answer."""
+
 
 def advise(built: BuiltCase, done: Run, solution: Solution) -> list[Advisory]:
     """Every advisory that applies to a solved case, the gravest first, each once."""
     context = Context(built, done, solution)
-    found = dict.fromkeys(advisory for rule in RULES for advisory in rule.look(context))
+    found: dict[Advisory, None] = {}
+    for rule in RULES:
+        for finding in rule.look(context):
+            word = finding.word or rule.words[0]
+            advisory = Advisory(rule.code, word, finding.message, finding.of, rule.basis, finding.amounts)
+            found[advisory] = None
     return sorted(found, key=lambda advisory: SEVERITY.index(advisory.signal_word))
