@@ -16,6 +16,7 @@ from service.balance.network import Circuit
 from service.balance.processes import add_process, work_terms
 from service.balance.properties import TRANSFER
 from service.engine.model import Polynomial, Term
+from service.errors import Issue, SchemaViolation
 
 INCOMPRESSIBLE = ("solid", "constant_liquid", "brine")
 
@@ -95,6 +96,10 @@ def add_total_energy_balance(builder: Builder, boundary: str) -> None:
         terms.append(Term(sign, ((energy, 1),), "", transfer.kind.replace("_", " "), transfer.id))
     terms += [t for c in held for t in work_terms(builder, c)]
     terms += [t for c in held for t in _content_energy(builder, c, "final", -1.0)]
+    if not terms:
+        text = f"The boundary {boundary} holds nothing, and nothing crosses it."
+        pointer = next(b.pointer for b in builder.case.boundaries if b.id == boundary)
+        raise SchemaViolation(text, [Issue(text, "", "Add `contents`, or leave it out.", pointer)])
     balance = Polynomial.of(f"energy balance of {boundary}", terms)
     builder.model.equations.append(balance)
     builder.built.energy_balances.append(EnergyBalance(boundary, balance, balance))
