@@ -137,15 +137,26 @@ class Context:
                 found[boundary].append(state)
         return found
 
-    def fed(self) -> Iterator[tuple[StreamState, list[StreamState]]]:
+    @cached_property
+    def fed(self) -> list[tuple[StreamState, list[StreamState]]]:
         """Every outflow of a boundary with the inflows of the same fluid there."""
-        for boundary, leaving in self.outflows.items():
-            for state in leaving:
-                yield state, [s for s in self.inflows[boundary] if s.fluid == state.fluid]
+        return [
+            (state, [s for s in self.inflows[boundary] if s.fluid == state.fluid])
+            for boundary, leaving in self.outflows.items()
+            for state in leaving
+        ]
+
+    @cached_property
+    def _transfers(self) -> dict[str | None, list[Transfer]]:
+        found: dict[str | None, list[Transfer]] = {}
+        for transfer in self.built.case.transfers:
+            for boundary in {transfer.source, transfer.target}:
+                found.setdefault(boundary, []).append(transfer)
+        return found
 
     def transfers_at(self, boundary: str, *kinds: str) -> list[Transfer]:
-        crossing = [t for t in self.built.case.transfers if boundary in (t.source, t.target)]
-        return [t for t in crossing if t.kind in kinds]
+        """The transfers of these kinds that cross a boundary."""
+        return [t for t in self._transfers.get(boundary, ()) if t.kind in kinds]
 
     @cached_property
     def machines(self) -> list[Machine]:

@@ -120,6 +120,17 @@ def doubtful_phase(context: Context) -> Iterator[Finding]:
             yield Finding(text, f"{stream.id}.T", amounts)
 
 
+def stopped_early(context: Context) -> Iterator[Finding]:
+    """A calculation over time that could not go on to what was asked."""
+    transient = context.solution.transient
+    if transient is not None and transient.stopped:
+        text = (
+            f"The calculation stopped {{0}} after the start, before what was asked: {literal(transient.stopped)} The "
+            "numbers hold up to then."
+        )
+        yield Finding(text, "until", (("time", transient.end_time),))
+
+
 @runtime_checkable
 class _HasDewPoint(Protocol):
     def dew_point(self, p: float) -> float | None:

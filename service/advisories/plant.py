@@ -48,7 +48,7 @@ def below_atmosphere(context: Context) -> Iterator[Finding]:
 
 def flashing_liquid(context: Context) -> Iterator[Finding]:
     """A liquid that enters a boundary and leaves it partly as vapour, although nothing heats it there."""
-    for end, feeders in context.fed():
+    for end, feeders in context.fed:
         if end.phase != "two_phase" or not feeders or any(f.phase != "liquid" for f in feeders):
             continue
         boundary = context.streams[end.stream].source
@@ -62,7 +62,7 @@ def flashing_liquid(context: Context) -> Iterator[Finding]:
 
 def cold_embrittlement(context: Context) -> Iterator[Finding]:
     """What comes in above -29 degC and is made colder: a let-down or a vessel that is emptied."""
-    made = [(end, feeders) for end, feeders in context.fed() if feeders]
+    made = [(end, feeders) for end, feeders in context.fed if feeders]
     for content in context.built.case.contents:
         ends = [context.state(f"{content.id}.{end}") for end in ("initial", "final")]
         made += [(end, [start]) for start, end in [ends] if start is not None and end is not None]
@@ -96,11 +96,11 @@ def freezing(context: Context) -> Iterator[Finding]:
 
 def frosting(context: Context) -> Iterator[Finding]:
     """Humid air that is cooled below 0 degC, or to its dew point by a surface below 0 degC."""
-    for end, feeders in context.fed():
+    for end, feeders in context.fed:
         T = known(end, "T")
-        dew = max((known(f, "dew_point") or 0.0 for f in feeders), default=0.0)
         if end.phase != "humid_air" or T is None or not feeders:
             continue
+        dew = max((known(f, "dew_point") or 0.0 for f in feeders), default=0.0)
         surface = _coldest_surface(context, end.stream)
         cold = min(T, surface) if surface is not None else T
         if cold < FREEZING and dew > cold and all((known(f, "T") or 0.0) > T for f in feeders):
@@ -123,7 +123,7 @@ def _coldest_surface(context: Context, stream: str) -> float | None:
 
 def condensation(context: Context) -> Iterator[Finding]:
     """Humid air that meets a surface below its dew point, or leaves saturated, where no water is said to leave."""
-    for end, feeders in context.fed():
+    for end, feeders in context.fed:
         boundary = context.streams[end.stream].source
         if end.phase != "humid_air" or boundary is None or not feeders:
             continue
@@ -166,7 +166,7 @@ def high_velocity(context: Context) -> Iterator[Finding]:
 
 def wet_after_spray(context: Context) -> Iterator[Finding]:
     """Vapour that liquid was sprayed into, leaving with little or no superheat."""
-    for end, feeders in context.fed():
+    for end, feeders in context.fed:
         fluid, p, T = context.fluid(end.stream), known(end, "p"), known(end, "T")
         phases = {f.phase for f in feeders}
         if fluid is None or p is None or T is None or not ({"vapour", "supercritical"} & phases and "liquid" in phases):
@@ -198,3 +198,20 @@ def liquid_full(context: Context) -> Iterator[Finding]:
                 "opens or bursts. It needs a thermal relief valve, or room for the vapour."
             )
             yield Finding(text, f"{content.id}.final.p", (("pressure", p1), ("pressure", p2)))
+
+
+def wall_too_cold(context: Context) -> Iterator[Finding]:
+    """A wall that at some time is colder than its minimum design temperature."""
+    transient = context.solution.transient
+    for content in context.built.case.contents if transient is not None else ():
+        design, reached = content.quantities.get("wall.minimum_temperature"), f"{content.id}.wall.T"
+        if transient is None or design is None or design.value is None or reached not in transient.extremes:
+            continue
+        coldest, when, _, _ = transient.extremes[reached]
+        if coldest < design.value:
+            text = (
+                f"The wall of {content.id} falls to {{0}}, {{1}} after the start, below its minimum design "
+                "temperature of {2}: it may break brittle. Let down more slowly, in steps, or do not raise the "
+                "pressure again while it is cold."
+            )
+            yield Finding(text, reached, (("temperature", coldest), ("time", when), ("temperature", design.value)))

@@ -121,6 +121,10 @@ RULES: tuple[Rule, ...] = (
         "A content of fixed volume ends as liquid at more than twice its first pressure.",
     ),
     Rule(
+        "wall-too-cold", ("WARNING",), plant.wall_too_cold, "minimum design temperature stated in the case",
+        "In a calculation over time a wall falls below the minimum design temperature that the case states for it.",
+    ),
+    Rule(
         "hot-compressed-air", ("WARNING",), machines.hot_compressed_air,
         f"{PRACTICE}: 180 degC at oil-lubricated discharge",
         "Air or oxygen leaves compression hotter than 180 degC.",
@@ -200,6 +204,10 @@ RULES: tuple[Rule, ...] = (
         "high-velocity", ("NOTICE",), plant.high_velocity,
         f"{PRACTICE}: 5 m/s for liquids, 25 m/s for wet steam, 60 m/s for gases and steam",
         "The velocity in a stream with a bore lies above what lines are built for. Outlets of relations are left out.",
+    ),
+    Rule(
+        "stopped-early", ("NOTICE",), numbers.stopped_early, "course of the calculation",
+        "A calculation over time had to stop before the time or the condition that was asked for.",
     ),
     Rule(
         "near-model-limit", ("NOTICE",), numbers.near_model_limit, "limits of the equation of state",

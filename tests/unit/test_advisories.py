@@ -319,7 +319,7 @@ def test_an_advisory_is_raised_where_it_applies_and_not_next_to_it(code: str) ->
     assert code not in {item["code"] for item in items(innocent())}
 
 
-OWN_TESTS = {"liquid-full"}
+OWN_TESTS = {"liquid-full", "wall-too-cold", "stopped-early"}
 """Codes that only balances over a period raise: test_advisories_rules.py."""
 
 
