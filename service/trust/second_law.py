@@ -6,7 +6,7 @@ S_gen = Σ ṁ s (out) − Σ ṁ s (in) − Σ Q̇/T (in, at the temperature wh
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 
 from service.balance.builder import BuiltCase
 from service.balance.case import Content, Stream, Transfer
@@ -27,18 +27,59 @@ class _NotCheckable(Exception):
 
 
 def entropy_checks(built: BuiltCase, done: Run) -> list[EntropyCheck]:
-    """Entropy generation [W/K] of every boundary with an energy balance, with its verdict.
+    """Entropy generation [W/K, or J/K over a period] of every boundary with an energy balance, with its verdict.
 
     Boundaries that exchange heat at an unknown temperature (the two sides of an exchanger) are checked together.
     """
+    plant = _Plant(built, done)
     checks = []
     for group in _groups(built, done):
         name = " + ".join(group)
         try:
-            checks.append(_check(built, done, name, set(group)))
+            checks.append(_check(name, _Group(plant, group)))
         except _NotCheckable as reason:
             checks.append(EntropyCheck(name, None, "not_checked", str(reason)))
     return checks
+
+
+class _Plant:
+    """A solved case with what crosses and fills each boundary."""
+
+    def __init__(self, built: BuiltCase, done: Run) -> None:
+        self.built, self.done = built, done
+        self.streams: dict[str | None, list[Stream]] = {}
+        self.transfers: dict[str | None, list[Transfer]] = {}
+        self.contents: dict[str, list[Content]] = {}
+        for stream in built.case.streams:
+            for end in {stream.source, stream.target}:
+                self.streams.setdefault(end, []).append(stream)
+        for transfer in built.case.transfers:
+            for end in {transfer.source, transfer.target}:
+                self.transfers.setdefault(end, []).append(transfer)
+        for content in built.case.contents:
+            self.contents.setdefault(content.boundary, []).append(content)
+        self.states: dict[str, list[Mapping[str, float]]] = {}
+        for key, node in built.state_nodes.items():
+            if (found := done.lookups.get(node)) is not None:
+                self.states.setdefault(key.partition(".")[0], []).append(found)
+
+    def value(self, *addresses: str) -> float:
+        """The value [SI] of the first of the addresses that the model knows; NaN where it knows none."""
+        number = next((n for a in addresses if (n := self.built.model.index.get(a)) is not None), None)
+        return float(self.done.values[number]) if number is not None else math.nan
+
+
+class _Group:
+    """Boundaries that are checked together. out: +1 where something leaves them, -1 where it enters, else 0."""
+
+    def __init__(self, plant: _Plant, boundaries: list[str]) -> None:
+        self.plant, self.boundaries = plant, set(boundaries)
+        self.streams = {s.id: s for b in boundaries for s in plant.streams.get(b, ())}.values()
+        self.transfers = {t.id: t for b in boundaries for t in plant.transfers.get(b, ())}.values()
+        self.contents = [c for b in boundaries for c in plant.contents.get(b, ())]
+
+    def out(self, item: Stream | Transfer) -> float:
+        return (item.source in self.boundaries) * 1.0 - (item.target in self.boundaries) * 1.0
 
 
 def _groups(built: BuiltCase, done: Run) -> list[list[str]]:
@@ -56,21 +97,20 @@ def _groups(built: BuiltCase, done: Run) -> list[list[str]]:
     return [[names[i] for i in group] for group in groups]
 
 
-def _check(built: BuiltCase, done: Run, name: str, group: set[str]) -> EntropyCheck:
-    case = built.case
-    signed = [(s, (s.source in group) * 1.0 - (s.target in group) * 1.0) for s in case.streams]
-    crossing = [(s, sign) for s, sign in signed if sign]
-    flows = [_flow(built, done, s, _passes(built, group)) for s, _ in crossing]
-    terms = [sign * m * _entropy(built, done, s) for m, (s, sign) in zip(flows, crossing, strict=True)]
-    for content in case.contents:
-        if content.boundary in group:
-            terms += _stored(built, done, content)
-    heat = _heat_out(built, done, group)
+def _check(name: str, group: _Group) -> EntropyCheck:
+    crossing = [s for s in group.streams if group.out(s)]
+    flows = [_flow(group, s) for s in crossing]
+    terms = [group.out(s) * m * _entropy(group.plant, s) for m, s in zip(flows, crossing, strict=True)]
+    for content in group.contents:
+        for sign, mass, s in _stored(group.plant, content):
+            flows.append(mass)
+            terms.append(sign * mass * s)
+    heat = _heat_out(group)
     terms += [rate / T for rate, T in heat.values() if T is not None]
     doubtful = {name: rate for name, (rate, T) in heat.items() if T is None}
     noise = NOISE * max([*(abs(t) for t in terms), *(LEAST_CAPACITY * abs(m) for m in flows)], default=0.0)
     if doubtful:
-        return _without_temperatures(built, name, sum(terms), doubtful, _range(built, done, group), noise)
+        return _without_temperatures(name, group, sum(terms), doubtful, noise)
     generation = sum(terms)
     if generation < -noise:
         return EntropyCheck(name, generation, "violated", "Entropy would be destroyed.")
@@ -78,12 +118,7 @@ def _check(built: BuiltCase, done: Run, name: str, group: set[str]) -> EntropyCh
 
 
 def _without_temperatures(
-    built: BuiltCase,
-    name: str,
-    known: float,
-    doubtful: Mapping[str, float],
-    inside: tuple[float, float] | None,
-    noise: float,
+    name: str, group: _Group, known: float, doubtful: Mapping[str, float], noise: float
 ) -> EntropyCheck:
     """The verdict where heat crosses at temperatures that are not given; known [W/K]: all other terms.
 
@@ -91,14 +126,14 @@ def _without_temperatures(
     destroyed. Otherwise heat from or to the surroundings is counted at the ambient temperature, where that is given:
     it can confirm but, since a heating or cooling agent may not be drawn, not condemn.
     """
-    names = ", ".join(doubtful)
+    names, inside = ", ".join(doubtful), _range(group)
     if inside is not None:
         best = known + sum(rate / (inside[0] if rate > 0 else inside[1]) for rate in doubtful.values())
         if best < -noise:
             why = f"Entropy would be destroyed, at whatever temperature inside the heat crosses: {names}."
             return EntropyCheck(name, best, "violated", why)
-    ambient = built.case.site.ambient_temperature
-    outside = {t.id for t in built.case.transfers if None in (t.source, t.target)}
+    ambient = group.plant.built.case.site.ambient_temperature
+    outside = {t.id for t in group.transfers if None in (t.source, t.target)}
     if ambient is None or not doubtful.keys() <= outside:
         raise _NotCheckable(f"Not said: the `temperature` at which heat crosses in {names}.")
     generation = known + sum(doubtful.values()) / ambient
@@ -111,81 +146,75 @@ def _without_temperatures(
     return EntropyCheck(name, generation, "satisfied", why)
 
 
-def _range(built: BuiltCase, done: Run, group: set[str]) -> tuple[float, float] | None:
+def _range(group: _Group) -> tuple[float, float] | None:
     """The lowest and the highest temperature [K] inside; None where nothing is known to be inside.
 
     That of what crosses or is held, but a working fluid that does not show may be as cold as the surroundings and,
     where work crosses, as hot as any fire.
     """
-    case = built.case
-    items = {s.id for s in case.streams if {s.source, s.target} & group}
-    held = {c.id for c in case.contents if c.boundary in group}
-    nodes = [n for key, n in built.state_nodes.items() if key in items or key.partition(".")[0] in held]
-    T = [found["T"] for n in nodes if (found := done.lookups.get(n)) is not None and "T" in found]
+    items = [*(s.id for s in group.streams), *(c.id for c in group.contents)]
+    T = [state["T"] for item in items for state in group.plant.states.get(item, ()) if "T" in state]
     if not T:
         return None
-    works = any(t.kind not in ("heat", "fuel") and {t.source, t.target} & group for t in case.transfers)
-    surroundings = case.site.ambient_temperature or COLD_SURROUNDINGS
+    works = any(t.kind not in ("heat", "fuel") for t in group.transfers)
+    surroundings = group.plant.built.case.site.ambient_temperature or COLD_SURROUNDINGS
     return min(*T, surroundings), math.inf if works else max(T)
 
 
-def _stored(built: BuiltCase, done: Run, content: Content) -> list[float]:
-    """Final and minus initial entropy of a content [J/K]."""
-    terms = []
+def _stored(plant: _Plant, content: Content) -> Iterator[tuple[float, float, float]]:
+    """(sign, mass [kg], s [J/(kg K)]) of the initial and the final state of a content."""
     for end, sign in (("initial", -1.0), ("final", 1.0)):
-        index = built.model.index
-        mass = done.values[index.get(f"{content.id}.{end}.mass", index.get(f"{content.id}.mass", 0))]
+        mass = plant.value(f"{content.id}.{end}.mass", f"{content.id}.mass")
         if mass == 0.0:
             continue
-        looked_up = done.lookups.get(built.state_nodes.get(f"{content.id}.{end}", -1))
+        looked_up = plant.done.lookups.get(plant.built.state_nodes.get(f"{content.id}.{end}", -1))
         if looked_up is None or not math.isfinite(mass) or not math.isfinite(looked_up.get("s", math.nan)):
             raise _NotCheckable(f"The {end} state or mass of {content.id} is not known.")
-        terms.append(sign * mass * looked_up["s"])
-    return terms
+        yield sign, mass, looked_up["s"]
 
 
-def _passes(built: BuiltCase, group: set[str]) -> bool:
-    """Whether one stream enters, one leaves, and no heat crosses: the verdict is then the same for any flow."""
-    case = built.case
-    ends = [(s.source in group, s.target in group) for s in case.streams if (s.source in group) != (s.target in group)]
-    heated = any(t.kind == "heat" and (t.source in group) != (t.target in group) for t in case.transfers)
-    return case.system == "steady_flow" and sorted(ends) == [(False, True), (True, False)] and not heated
-
-
-def _flow(built: BuiltCase, done: Run, stream: Stream, passes: bool) -> float:
+def _flow(group: _Group, stream: Stream) -> float:
     """Flow [kg/s] or mass [kg] of a stream; 1 where it is not known and does not matter."""
-    index, amount = built.model.index, "mass_flow" if built.case.system == "steady_flow" else "mass"
-    number = index.get(f"{stream.id}.dry_air_flow", index.get(f"{stream.id}.{amount}"))
-    flow = done.values[number] if number is not None else math.nan
+    plant = group.plant
+    amount = "mass_flow" if plant.built.case.system == "steady_flow" else "mass"
+    flow = plant.value(f"{stream.id}.dry_air_flow", f"{stream.id}.{amount}")
     if math.isfinite(flow):
-        return float(flow)
-    if passes:
+        return flow
+    if _passes(group):
         return 1.0
     raise _NotCheckable(f"The flow of {stream.id} is not known.")
 
 
-def _entropy(built: BuiltCase, done: Run, stream: Stream) -> float:
-    looked_up = done.lookups.get(built.state_nodes.get(stream.id, -1))
+def _passes(group: _Group) -> bool:
+    """Whether one stream enters, one leaves, and no heat crosses: the verdict is then the same for any flow."""
+    ends = sorted(out for s in group.streams if (out := group.out(s)))
+    heated = any(t.kind == "heat" and group.out(t) for t in group.transfers)
+    return group.plant.built.case.system == "steady_flow" and ends == [-1.0, 1.0] and not heated
+
+
+def _entropy(plant: _Plant, stream: Stream) -> float:
+    looked_up = plant.done.lookups.get(plant.built.state_nodes.get(stream.id, -1))
     s = looked_up.get("s", math.nan) if looked_up is not None else math.nan
     if not math.isfinite(s):
         raise _NotCheckable(f"The entropy of {stream.id} is not known.")
     return s
 
 
-def _heat_out(built: BuiltCase, done: Run, group: set[str]) -> dict[str, tuple[float, float | None]]:
+def _heat_out(group: _Group) -> dict[str, tuple[float, float | None]]:
     """Heat that leaves a group of boundaries [W, J], and the temperature [K] at which it does, None where not known."""
+    plant = group.plant
     out: dict[str, tuple[float, float | None]] = {}
-    rate_name = "rate" if built.case.system == "steady_flow" else "energy"
-    for transfer in built.case.transfers:
-        sign = (transfer.source in group) * 1.0 - (transfer.target in group) * 1.0
+    rate_name = "rate" if plant.built.case.system == "steady_flow" else "energy"
+    for transfer in group.transfers:
+        sign = group.out(transfer)
         if sign and transfer.kind == "fuel":
             raise _NotCheckable(f"{transfer.id} is a fuel; the entropy of its combustion is not modelled.")
         if sign and transfer.kind == "heat":
-            rate = done.values[built.model.index[f"{transfer.id}.{rate_name}"]]
+            rate = plant.value(f"{transfer.id}.{rate_name}")
             if not math.isfinite(rate):
                 raise _NotCheckable(f"The rate of {transfer.id} is not known.")
             if rate != 0.0:
-                out[transfer.id] = (sign * float(rate), _crossing_temperature(built, done, transfer))
+                out[transfer.id] = (sign * rate, _crossing_temperature(plant.built, plant.done, transfer))
     return out
 
 
