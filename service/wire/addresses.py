@@ -7,16 +7,22 @@ from collections.abc import Iterator, Mapping
 from service.wire.pointers import nearest_existing, pointer, token
 from service.wire.suggest import did_you_mean, quoted
 from service.wire.vocabulary import (
+    CONTENT,
     DIFFERENCE_OF,
+    ENDS,
     FOLLOWS_ADDRESSES,
     HEAT_LAW,
+    PROCESS,
     RELATION,
+    SIZE,
     STATE,
     STREAM_ALL,
     TRANSFER,
 )
 
 LISTS = ("streams", "transfers", "relations")
+CONTENTS = "contents"
+WHAT = {"streams": "stream", "transfers": "transfer", "relations": "relation", CONTENTS: "content"}
 DEEPEST_RELATION = 20
 """Relations over values of relations, one inside the other."""
 
@@ -38,6 +44,37 @@ def item_id(name: str, number: int, item: Mapping[str, object]) -> str | None:
     return f"relation-{number + 1}" if name == "relations" and found is None else None
 
 
+def contents(document: object) -> Iterator[tuple[int, int, Mapping[str, object]]]:
+    """The contents of every boundary, with the positions of boundary and content."""
+    for place, boundary in items(document, "boundaries"):
+        for number, content in items(boundary, CONTENTS):
+            yield place, number, content
+
+
+def stages(content: Mapping[str, object]) -> list[tuple[str, Mapping[str, object]]]:
+    """(name, stage) for the process of a content: `process` for one stage, `stage-1`, `stage-2` ... for a list."""
+    process = content.get("process")
+    if isinstance(process, dict):
+        return [("process", process)]
+    found = process if isinstance(process, list) else []
+    if len(found) == 1 and isinstance(found[0], dict):
+        return [("process", found[0])]
+    return [(f"stage-{i + 1}", stage) for i, stage in enumerate(found) if isinstance(stage, dict)]
+
+
+def content_properties(content: Mapping[str, object]) -> dict[str, str]:
+    """Every quantity of a content, by its address without the content's id → quantity kind."""
+    table = dict(CONTENT)
+    named = stages(content)
+    between = [name for name, _ in named[:-1]]
+    for end in (*ENDS, *between):
+        table |= {f"{end}.{name}": kind for name, kind in {**STATE, **SIZE}.items()}
+    for name, _ in named:
+        table |= {f"{name}.{quantity}": kind for quantity, kind in PROCESS.items()}
+        table[f"{name}.expansion_work"] = CONTENT["expansion_work"]
+    return table
+
+
 class AddressBook:
     """The items of one request by id. Reads the document as it was sent, so that it serves broken requests as well."""
 
@@ -50,6 +87,12 @@ class AddressBook:
                 found = item_id(name, number, item)
                 if found is not None:
                     self.entries.setdefault(found, (name, number, item))
+        self.boundary_of: dict[str, int] = {}
+        for place, number, content in contents(document):
+            held = content.get("id")
+            if isinstance(held, str):
+                self.entries.setdefault(held, (CONTENTS, number, content))
+                self.boundary_of.setdefault(held, place)
 
     def properties(self, item: str) -> Mapping[str, str]:
         """Every property that an item can have → its quantity kind; {} for an unknown item."""
@@ -59,12 +102,15 @@ class AddressBook:
         name, _, body = entry
         if name == "streams":
             return STREAM_ALL
+        if name == CONTENTS:
+            return content_properties(body)
         kind = body.get("kind")
         if name == "transfers":
             table = TRANSFER.get(kind, {}) if isinstance(kind, str) else {}
             if kind == "heat" and "law" in body:
                 return {**table, **HEAT_LAW}
-            if kind == "fuel" and "normal_volume_flow" in body and "mass_flow" not in body:
+            by_volume = "normal_volume_flow" in body or "normal_volume" in body
+            if kind == "fuel" and by_volume and not {"mass_flow", "mass"} & set(body):
                 return {**table, "heating_value": "volumetric_heating_value"}
             return table
         table = RELATION.get(kind, {}) if isinstance(kind, str) else {}
@@ -76,7 +122,7 @@ class AddressBook:
 
     def kind(self, address: str) -> str | None:
         """The quantity kind of an address; None where no such quantity can exist."""
-        item, dot, name = address.rpartition(".")
+        item, dot, name = address.partition(".")
         return self.properties(item).get(name) if dot else None
 
     def value_kind(self, relation: Mapping[str, object], depth: int = 0, seen: set[int] | None = None) -> str | None:
@@ -96,7 +142,7 @@ class AddressBook:
         return None
 
     def _kind_of_member(self, address: str, depth: int, seen: set[int]) -> str | None:
-        item, _, name = address.rpartition(".")
+        item, _, name = address.partition(".")
         entry = self.entries.get(item)
         if entry is not None and entry[0] == "relations":
             body = entry[2]
@@ -109,7 +155,7 @@ class AddressBook:
 
     def what_is_wrong(self, address: str) -> tuple[str, str]:
         """(detail, hint) for an address that has no kind here."""
-        item, dot, name = address.rpartition(".")
+        item, dot, name = address.partition(".")
         if not dot:
             hint = "An address is `item.property`, for example outlet.T."
             if address in self.entries:
@@ -117,12 +163,11 @@ class AddressBook:
                 hint = f"Say which quantity of it is meant, for example {address}.{example}."
             return f"{quoted(address)} is not an address.", hint
         if item not in self.entries:
-            detail = (
-                f"{quoted(address)} speaks of {quoted(item)}, which is no stream, transfer or relation of the case."
-            )
+            known = "no stream, content, transfer or relation of the case"
+            detail = f"{quoted(address)} speaks of {quoted(item)}, which is {known}."
             return detail, did_you_mean(item, self.entries)
         options = self.properties(item)
-        what = {"streams": "stream", "transfers": "transfer", "relations": "relation"}[self.entries[item][0]]
+        what = WHAT[self.entries[item][0]]
         detail = f"The {what} {quoted(item)} has no quantity {quoted(name)}."
         if what == "transfer" and name in HEAT_LAW and self.entries[item][2].get("kind") == "heat":
             return detail, f'It exists only where the transfer follows a law: add "law": {{"{name}": ...}}.'
@@ -134,13 +179,15 @@ class AddressBook:
         """The pointer of an address: the quantity itself, or where it would stand, cut to what exists."""
         if not address:
             return "#"
-        item, _, name = address.rpartition(".")
+        item, _, name = address.partition(".")
         entry = self.entries.get(item)
         if entry is None:
             entry, name = self.entries.get(address), ""
         if entry is None:
             return self._boundary(address if item == "" else item)
         group, number, body = entry
+        if group == CONTENTS:
+            return self._in_content(item, number, body, name)
         base = pointer((group, number))
         if not name:
             return base
@@ -152,6 +199,21 @@ class AddressBook:
         if group == "transfers" and name in HEAT_LAW:
             return nearest_existing(self.document, f"{base}/law/{token(name)}")
         return nearest_existing(self.document, f"{base}/{token(name)}")
+
+    def _in_content(self, item: str, number: int, body: Mapping[str, object], name: str) -> str:
+        """The pointer of a content's quantity: `final.T`, `process.n`, `stage-1.p`."""
+        base = pointer(("boundaries", self.boundary_of[item], CONTENTS, number))
+        if not name:
+            return base
+        end, _, inner = name.rpartition(".")
+        state = body.get(end)
+        if inner == "x" and isinstance(state, dict) and "x" not in state and "saturated" in state:
+            inner = "saturated"
+        if end.startswith("stage-"):
+            place = f"process/{int(end.removeprefix('stage-')) - 1}" + ("" if inner in PROCESS else "/until")
+        else:
+            place = end
+        return nearest_existing(self.document, f"{base}/{place}/{token(inner)}" if place else f"{base}/{token(inner)}")
 
     def _boundary(self, name: str) -> str:
         for number, item in items(self.document, "boundaries"):

@@ -18,7 +18,7 @@ from marshmallow import Schema, fields
 from service.balance.solution import EntropyCheck, LedgerAccount, LedgerLine, Solution, StepRecord, StreamState
 from service.wire.presenting import NO_MEANING, SINGLE_PHASE, Presenter, Shown, rounded
 from service.wire.provenance import provenance
-from service.wire.vocabulary import DERIVED_STATE, STATE, STREAM
+from service.wire.vocabulary import DERIVED_STATE, SIZE, STATE, STREAM
 
 _DOUBLED = re.compile(r"\(\(([^()]*)\)\)")
 
@@ -102,7 +102,7 @@ class Answer:
         shown["interval"] = {"low": ends[0], "high": ends[1], "coverage": coverage}
 
     def state(self, state: StreamState) -> dict[str, Any]:
-        """A stream's whole state and its flows."""
+        """The whole state of a stream or a content, and its flows or its size."""
         out: dict[str, Any] = {}
         if state.fluid:
             out["fluid"] = state.fluid
@@ -115,7 +115,8 @@ class Answer:
                 reason = SINGLE_PHASE if name == "x" else NO_MEANING
                 out[name] = quantity(value, kind, self.asked.get(f"{state.stream}.{name}"), reason)
         for name, value in state.flows.items():
-            out[name] = quantity(value, STREAM[name], self.asked.get(f"{state.stream}.{name}"))
+            kind = STREAM.get(name) or SIZE[name]
+            out[name] = quantity(value, kind, self.asked.get(f"{state.stream}.{name}"))
         return out
 
     # -- ledger ------------------------------------------------------------------------------------------------

@@ -31,6 +31,7 @@ from service.balance.case import (
 from service.errors import SchemaViolation
 from service.units import UnitTable
 from service.wire.addresses import AddressBook, item_id, items
+from service.wire.contents import build_contents
 from service.wire.findings import Findings
 from service.wire.pointers import token
 from service.wire.quantities import QuantityReader
@@ -44,6 +45,7 @@ from service.wire.vocabulary import (
     SATURATED,
     STATE,
     STREAM,
+    SYSTEMS,
     TRANSFER,
 )
 
@@ -313,7 +315,7 @@ class CaseBuilder:
 
     def case(self, document: Body, book: AddressBook) -> Case:
         """The case (to be used only where nothing was found wrong)."""
-        site = self.site(document)
+        site, system = self.site(document), document.get("system", "steady_flow")
         fluids = self.fluids(document)
         reading = _Reading(self.reader, book)
         with _during(reading):
@@ -323,7 +325,7 @@ class CaseBuilder:
             relations = self._items(document, "relations", RELATION_ITEM, reading, RELATION)
         return Case(
             document.get("title", ""),
-            "steady_flow",
+            system if system in SYSTEMS else "steady_flow",
             site,
             fluids,
             boundaries,
@@ -332,6 +334,8 @@ class CaseBuilder:
             relations,
             tuple(self._limits(document, book)),
             self.answer(document),
+            tuple(build_contents(document, self.reader)),
+            "integrated" if document.get("form") == "integrated" else "rate",
         )
 
     @staticmethod

@@ -136,6 +136,11 @@ class QuantityReader:
         self.findings.add(error, detail, pointer=pointer, address=address, hint=hint)
 
     def _from_object(self, raw: Mapping[str, object], kind: str, address: str, pointer: str) -> Quantity | None:
+        if "table" in raw:
+            detail = "A table over time has no place here."
+            hint = "In a transient of the rate form, `mass_flow` of a stream and `rate` of a transfer can be one."
+            self.findings.add(SchemaViolation, detail, pointer=f"{pointer}/table", address=address, hint=hint)
+            return None
         if "unknown" in raw:
             return self._unknown(raw, kind, address, pointer)
         number = raw.get("value")

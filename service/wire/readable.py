@@ -7,11 +7,14 @@ from collections.abc import Iterable, Iterator
 from typing import Any
 
 WIDTH = 110
+ROWS = 13
+"""Rows of a history that a terminal shows."""
 
 
 def readable(answer: dict[str, Any]) -> str:
     """The answer document as text: answers, states, ledger, steps, checks, cautions."""
-    parts = [_title(answer), _answers(answer), _states(answer), _ledger(answer), _steps(answer), _checks(answer)]
+    parts = [_title(answer), _answers(answer), _course(answer), _states(answer), _ledger(answer), _steps(answer)]
+    parts += [_checks(answer)]
     parts += [_texts("Assumptions", answer["assumptions"]), _advisories(answer["advisories"])]
     return "\n\n".join(part for part in parts if part) + "\n"
 
@@ -39,7 +42,43 @@ def _states(answer: dict[str, Any]) -> str:
         shown = [f"{n} {_amount(q)}" for n, q in state.items() if isinstance(q, dict) and q.get("value") is not None]
         head = ", ".join(t for t in (state.get("fluid", ""), state.get("phase", "")) if t)
         rows.append((stream, f"{head}: {', '.join(shown)}"))
-    return _section("Streams", _aligned(rows))
+    held = any("." in name for name in answer["states"])
+    return _section("States" if held else "Streams", _aligned(rows))
+
+
+def _course(answer: dict[str, Any]) -> str:
+    """What a transient tells over time."""
+    told = answer.get("transient")
+    if told is None:
+        return ""
+    lines = [f"  ended after {_amount(told['end']['time'])}: {told['end']['reason']}"]
+    if told.get("stopped"):
+        lines += _wrapped(f"stopped before that: {told['stopped']}", "  ")
+    lines += _aligned((_amount(event["time"]), event["event"]) for event in told["events"])
+    lines += _aligned((address, _range(found)) for address, found in told["extremes"].items())
+    return _section("Over time", [*lines, *_history(told["history"])])
+
+
+def _range(found: dict[str, Any]) -> str:
+    return " to ".join(f"{_amount(found[end])} (at {_amount(found[end]['at'])})" for end in ("least", "largest"))
+
+
+def _history(history: dict[str, Any]) -> Iterator[str]:
+    """Some evenly spread rows of the history, at most as many columns as fit."""
+    columns = {"time": history["time"], **history["columns"]}
+    heads = [f"{name} [{column['unit']}]" for name, column in columns.items()]
+    widths = [max(len(head), 10) for head in heads]
+    while sum(widths) + 2 * len(widths) > WIDTH and len(widths) > 1:
+        widths.pop()
+    count = len(history["time"]["values"])
+    rows = sorted({round(i * (count - 1) / (ROWS - 1)) for i in range(ROWS)}) if count else []
+    yield "  " + "  ".join(f"{head:>{width}}" for head, width in zip(heads, widths, strict=False))
+    for row in rows:
+        cells = [column["values"][row] for column in columns.values()]
+        shown = ["—" if cell is None else f"{cell:.6g}" for cell in cells]
+        yield "  " + "  ".join(f"{cell:>{width}}" for cell, width in zip(shown, widths, strict=False))
+    if len(widths) < len(heads):
+        yield f"  ... and {len(heads) - len(widths)} more columns in the answer's `transient.history`."
 
 
 def _ledger(answer: dict[str, Any]) -> str:

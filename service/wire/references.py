@@ -5,7 +5,8 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 from service.errors import SchemaViolation
-from service.wire.addresses import AddressBook, item_id, items
+from service.wire.addresses import AddressBook, contents, item_id, items
+from service.wire.contents import check_system
 from service.wire.findings import Findings
 from service.wire.suggest import did_you_mean, listed, quoted
 from service.wire.vocabulary import FOLLOWS_ADDRESSES, RELATION, RELATION_STREAMS
@@ -15,6 +16,7 @@ def check_references(document: object, book: AddressBook, findings: Findings) ->
     """Check every name of a request, reading the document as it was sent."""
     boundaries = _boundaries(document, findings)
     _unique_items(document, findings)
+    check_system(document, findings)
     streams = {i: body for i, (name, _, body) in book.entries.items() if name == "streams"}
     for group in ("streams", "transfers"):
         for number, item in items(document, group):
@@ -56,7 +58,7 @@ def _boundaries(document: object, findings: Findings) -> Mapping[str, int]:
 
 
 def _unique_items(document: object, findings: Findings) -> None:
-    """Streams, transfers and relations share one space of names, since addresses begin with them."""
+    """Streams, contents, transfers and relations share one space of names, since addresses begin with them."""
     seen: dict[str, str] = {}
     for group in ("streams", "transfers", "relations"):
         for number, item in items(document, group):
@@ -67,6 +69,12 @@ def _unique_items(document: object, findings: Findings) -> None:
             if name in seen:
                 _twice(name, seen[name], f"{place}/id" if "id" in item else place, findings)
             seen.setdefault(name, place)
+    for boundary, number, content in contents(document):
+        held, base = content.get("id"), f"#/boundaries/{boundary}/contents/{number}"
+        if isinstance(held, str):
+            if held in seen:
+                _twice(held, seen[held], f"{base}/id", findings)
+            seen.setdefault(held, base)
 
 
 def _twice(name: str, first: str, second: str, findings: Findings) -> None:
@@ -74,7 +82,7 @@ def _twice(name: str, first: str, second: str, findings: Findings) -> None:
         SchemaViolation,
         f"The id {quoted(name)} is used twice; it names {first} already.",
         pointer=second,
-        hint="Give every stream, transfer, relation and boundary a name of its own.",
+        hint="Give every stream, content, transfer, relation and boundary a name of its own.",
     )
 
 

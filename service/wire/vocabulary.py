@@ -19,8 +19,19 @@ def _table(**kinds: str) -> Mapping[str, str]:
 STATE: Mapping[str, str] = MappingProxyType({name: trait.kind for name, trait in properties.STATE.items()})
 """State property → quantity kind. `saturated` is a word beside these and stands for x = 0 or 1."""
 
-STREAM: Mapping[str, str] = MappingProxyType({name: trait.kind for name, trait in properties.STREAM.items()})
+STREAM: Mapping[str, str] = MappingProxyType(
+    {name: trait.kind for name, trait in {**properties.STREAM, **properties.TOTAL}.items()}
+)
 """Property of a stream itself → quantity kind."""
+
+SIZE = _table(mass="mass", volume="volume", velocity="velocity", elevation="length")
+"""Property of a content at one end of the period, beside its state."""
+
+CONTENT: Mapping[str, str] = MappingProxyType({name: trait.kind for name, trait in properties.CONTENT.items()})
+PROCESS: Mapping[str, str] = MappingProxyType({name: trait.kind for name, trait in properties.PROCESS.items()})
+"""Quantities of a content as a whole, and of its process (or of a stage of it)."""
+
+ENDS = ("initial", "final")
 
 STREAM_ALL: Mapping[str, str] = MappingProxyType({**STREAM, **STATE})
 
@@ -41,12 +52,15 @@ SATURATED = MappingProxyType({"liquid": 0.0, "vapour": 1.0})
 HEAT_LAW = _table(UA="conductance", source_temperature="temperature")
 TRANSFER: Mapping[str, Mapping[str, str]] = MappingProxyType(
     {
-        "heat": _table(rate="power", temperature="temperature"),
-        "shaft_work": _table(rate="power"),
-        "electrical_work": _table(rate="power"),
-        "expansion_work": _table(rate="power"),
+        "heat": _table(rate="power", energy="energy", temperature="temperature"),
+        "shaft_work": _table(rate="power", energy="energy"),
+        "electrical_work": _table(rate="power", energy="energy"),
+        "expansion_work": _table(rate="power", energy="energy"),
         "fuel": _table(
             rate="power",
+            energy="energy",
+            mass="mass",
+            normal_volume="normal_volume",
             mass_flow="mass_flow",
             normal_volume_flow="normal_volume_flow",
             heating_value="specific_energy",
@@ -118,7 +132,13 @@ MIXTURE_MODELS = ("ideal_gas", "real_gas")
 
 SITE = _table(atmospheric_pressure="pressure", ambient_temperature="temperature")
 
-SYSTEMS = ("steady_flow",)
+SYSTEMS = ("steady_flow", "closed", "transient")
+
+OVER_TIME = frozenset({"rate", "mass_flow", "dry_air_flow", "molar_flow", "volume_flow", "normal_volume_flow", "law"})
+"""Members that are a rate or need one: they belong to steady flow."""
+
+IN_TOTAL = MappingProxyType({"energy": "rate", "mass": "mass_flow", "normal_volume": "normal_volume_flow"})
+"""Members that are a total over a period, with what stands for them in steady flow."""
 UNIT_SYSTEMS = ("metric", "SI", "US")
 DETAILS = ("full", "brief")
 WORK_POSITIVE = ("into_system", "out_of_system")

@@ -68,7 +68,7 @@ def test_relations_without_an_id_are_called_by_their_place() -> None:
     [
         ({"kind": "equal", "of": ["inlt.T", "outlet.T"]}, "of/0", 'Did you mean "inlet"'),
         ({"kind": "equal", "of": ["inlet.T", "outlet.temp"]}, "of/1", 'Did you mean "T"'),
-        ({"kind": "equal", "of": ["inlet.T", "valve.T"]}, "of/1", "no stream, transfer or relation"),
+        ({"kind": "equal", "of": ["inlet.T", "valve.T"]}, "of/1", "no stream, content, transfer or relation"),
         ({"kind": "equal", "of": ["loss.UA", "loss.UA"]}, "of/0", "law"),
         ({"kind": "equal", "of": ["inlet.T", "inlet.T"]}, "of/1", "twice"),
         ({"kind": "equal", "of": ["inlet.T", "outlet.p"]}, "of", "one kind"),

@@ -53,7 +53,7 @@ def changed(path: str, value: Any) -> dict[str, Any]:
         ("/streams", {}, "#/streams", "A list"),
         ("/streams", [], "#/streams", "At least 1"),
         ("/system", "steady-flow", "#/system", 'Did you mean "steady_flow"'),
-        ("/system", "transient", "#/system", "This version solves steady_flow"),
+        ("/system", "batch", "#/system", "Allowed here"),
         ("/transfers/0/kind", "haet", "#/transfers/0/kind", 'Did you mean "heat"'),
         ("/transfers/0/basis", "net", "#/transfers/0/basis", "Allowed here"),
         ("/transfers/0/UA", "3 W/K", "#/transfers/0/UA", 'inside of "law"'),
