@@ -11,7 +11,7 @@ import numpy.typing as npt
 
 from service.balance.case import Case
 
-Method: TypeAlias = Literal["rearranged", "property lookup", "bracketed root", "simultaneous"]
+Method: TypeAlias = Literal["rearranged", "property lookup", "bracketed root", "simultaneous", "time integration"]
 Show: TypeAlias = Callable[[int], str]
 Rendering: TypeAlias = Callable[[Show], str]
 """Writes a formula, given how to show each variable: by its address, or as a number with its unit."""

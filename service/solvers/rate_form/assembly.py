@@ -6,7 +6,7 @@ import math
 from collections.abc import Mapping
 
 from service.balance.accumulation import INCOMPRESSIBLE
-from service.balance.case import Case, Content, Relation, Stream, Transfer
+from service.balance.case import Case, Content, Quantities, Relation, Stream, Transfer
 from service.errors import Issue, SchemaViolation, UnderSpecified
 from service.fluids.protocol import Fluid, State
 from service.solvers.rate_form.crossings import Course, Exchange, Flow
@@ -94,15 +94,14 @@ def _vessel(reader: Reader, content: Content) -> Vessel:
     return vessel
 
 
-def _either(reader: Reader, of: Mapping[str, object], name: str) -> float | None:
+def _either(reader: Reader, of: Quantities, name: str) -> float | None:
     """`volume`, or `initial.volume`: a value, or an unknown constant if nothing else fixes it."""
     for key in (name, f"initial.{name}"):
         quantity = of.get(key)
-        value = getattr(quantity, "value", None)
-        if value is not None:
-            return float(value)
-        if getattr(quantity, "address", None) in reader.trial:
-            return reader.trial[quantity.address]  # type: ignore[union-attr]
+        if quantity is not None and quantity.value is not None:
+            return quantity.value
+        if quantity is not None and quantity.address in reader.trial:
+            return reader.trial[quantity.address]
     return None
 
 
@@ -116,9 +115,7 @@ def _agreed(content: Content, given: float | None, found: float, agreement: floa
     return found
 
 
-def _open_tank(
-    reader: Reader, content: Content, fluid: Fluid, volume: float | None, mass: float | None
-) -> Vessel:
+def _open_tank(reader: Reader, content: Content, fluid: Fluid, volume: float | None, mass: float | None) -> Vessel:
     """A tank open to the atmosphere: the pressure of its content stays what it is at first."""
     known = reader.known_state(content.quantities, "initial.")
     if "p" not in known and len(known) < 2:

@@ -108,8 +108,9 @@ def _of_vessel(plant: Plant, n: int, vessel: Vessel) -> Sequence[Watch]:
     found.append(
         Watch(
             lambda m, y: m.held[n].state.values["T"] - warmest,
-            lambda m, y: f"{name} reaches {shown('temperature', warmest)}, where the property model of "
-            f"{vessel.fluid.name} ends",
+            lambda m, y: (
+                f"{name} reaches {shown('temperature', warmest)}, where the property model of {vessel.fluid.name} ends"
+            ),
         )
     )
     return found

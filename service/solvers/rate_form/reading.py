@@ -57,9 +57,7 @@ class Reader:
 
     # -- states --------------------------------------------------------------------------------------------------
 
-    def state_of(
-        self, fluid: Fluid, known: Mapping[str, float], owner: str, pointer: str, prefix: str = ""
-    ) -> State:
+    def state_of(self, fluid: Fluid, known: Mapping[str, float], owner: str, pointer: str, prefix: str = "") -> State:
         """The state that known properties fix. Raises UnderSpecified, StateOutOfRange, Contradictory."""
         inputs = fluid.inputs(known)
         if inputs is None and fluid.pressure_optional and "p" not in known:

@@ -88,7 +88,9 @@ class Vessel:
             return self.fluid.state(("p", "h"), (self.pressure, energy / mass))
         floor = LEAST * self.mass_scale
         if self.mass == 0.0 and mass < floor:  # just beginning to fill: all that came in has the energy it came with
-            return self.flash.state(floor / self.volume, energy / mass if mass > 1e-3 * floor else self.filling_enthalpy)
+            return self.flash.state(
+                floor / self.volume, energy / mass if mass > 1e-3 * floor else self.filling_enthalpy
+            )
         return self.flash.state(mass / self.volume, energy / mass)
 
     def internal_energy(self, held: Held) -> float:
