@@ -11,12 +11,13 @@ from service.balance.case import Case
 from service.balance.solution import SeriesResult, Solution, StructureReport
 from service.errors import SchemaViolation
 from service.fluids.catalogue import FluidCatalogue
-from service.solvers import pipeline
+from service.solvers import pipeline, transient
 
 
 def solve(case: Case, catalogue: FluidCatalogue, deadline: float | None = None) -> Solution:
     """The solved case [SI]. Raises CaseError; `deadline` is a time.monotonic() value."""
-    _no_rate_form(case)
+    if _is_rate_form(case):
+        return transient.solve(case, catalogue, deadline)
     return pipeline.solve(case, catalogue, deadline)
 
 
@@ -38,8 +39,12 @@ def series(
     return pipeline.series(case, catalogue, readings, report, deadline)
 
 
+def _is_rate_form(case: Case) -> bool:
+    return case.system == "transient" and case.form == "rate"
+
+
 def _no_rate_form(case: Case) -> None:
-    if case.system == "transient" and case.form == "rate":
+    if _is_rate_form(case):
         raise SchemaViolation(
             "This cannot be done for a transient in its rate form.",
             hint='Use "form": "integrated", or solve it as one case.',
