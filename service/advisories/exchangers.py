@@ -5,6 +5,8 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 
+import numpy as np
+
 from service.advisories.context import Context, Finding, known
 from service.balance.case import Relation
 from service.balance.relations import correction_factor
@@ -32,21 +34,36 @@ def _exchangers(context: Context) -> Iterator[tuple[Relation, dict[str, StreamSt
             yield relation, states, tuple(t for t in T if t is not None)
 
 
-def _impossible(relation: Relation, T: tuple[float, ...]) -> bool:
+def _factor(relation: Relation, T: tuple[float, ...]) -> float:
+    """F of one shell pass [-]; 1 for other arrangements, 0 where one shell pass cannot reach these temperatures."""
     hi, ho, ci, co = T
-    parallel = relation.arrangement == "parallel_flow" and co > ho * (1 + PERCEPTIBLE)
-    return parallel or co > hi * (1 + PERCEPTIBLE) or ho < ci * (1 - PERCEPTIBLE)
+    if relation.arrangement != "shell_and_tube" or co == ci or hi == ci or hi == ho:
+        return 1.0
+    R, P = np.float64((hi - ho) / (co - ci)), np.float64((co - ci) / (hi - ci))  # which divide by zero quietly
+    factor = float(correction_factor(R, P))
+    return factor if math.isfinite(factor) and factor > 0.0 else 0.0
+
+
+def _impossible(relation: Relation, T: tuple[float, ...]) -> str:
+    """What no exchanger of this arrangement can do, "" where the temperatures are possible."""
+    hi, ho, ci, co = T
+    if co > hi * (1 + PERCEPTIBLE) or ho < ci * (1 - PERCEPTIBLE):
+        return "a stream passes the inlet temperature of the other"
+    if relation.arrangement == "parallel_flow" and co > ho * (1 + PERCEPTIBLE):
+        return "the cold stream passes the hot one, in parallel flow,"
+    if _factor(relation, T) == 0.0:
+        return "the temperatures cross by more than one shell pass allows"
+    return ""
 
 
 def temperature_impossible(context: Context) -> Iterator[Finding]:
-    """An outlet beyond the inlet temperature of the other stream; in parallel flow, beyond its outlet."""
+    """End temperatures that no exchanger of the arrangement can have."""
     for relation, _, T in _exchangers(context):
-        if _impossible(relation, T):
-            other = "the outlet" if relation.arrangement == "parallel_flow" and T[3] <= T[0] else "the inlet"
+        what = _impossible(relation, T)
+        if what:
             text = (
-                f"In {relation.id} a stream passes {other} temperature of the other (hot {{0}} to {{1}}, cold {{2}} "
-                "to {3}), which no exchanger of this arrangement can do. Check the readings and which streams belong "
-                "together."
+                f"In {relation.id} {what} (hot {{0}} to {{1}}, cold {{2}} to {{3}}), which no exchanger of this "
+                "arrangement can do. Check the readings, the arrangement, and which streams belong together."
             )
             yield Finding(text, relation.id, tuple(("temperature", t) for t in T))
 
@@ -58,18 +75,16 @@ def temperature_cross(context: Context) -> Iterator[Finding]:
         if co > ho * (1 + PERCEPTIBLE) and not _impossible(relation, T):
             text = (
                 f"In {relation.id} the cold stream leaves hotter ({{0}}) than the hot stream ({{1}}): only true "
-                "counterflow does that; with several tube passes check the correction factor, or use shells in series."
+                "counterflow does that well; with several tube passes use shells in series."
             )
             yield Finding(text, relation.id, (("temperature", co), ("temperature", ho)))
 
 
 def low_correction_factor(context: Context) -> Iterator[Finding]:
     """A shell-and-tube exchanger whose F lies where a degree more or less changes everything."""
-    for relation, _, (hi, ho, ci, co) in _exchangers(context):
-        if relation.arrangement != "shell_and_tube" or co == ci or hi == ci:
-            continue
-        factor = float(correction_factor((hi - ho) / (co - ci), (co - ci) / (hi - ci)))
-        if math.isfinite(factor) and factor < STEEP:
+    for relation, _, T in _exchangers(context):
+        factor = _factor(relation, T)
+        if 0.0 < factor < STEEP and not _impossible(relation, T):
             text = (
                 f"The correction factor of {relation.id} is {{0}}: with one shell pass the duty then hangs on "
                 "fractions of a degree. Use several shells, or counterflow."

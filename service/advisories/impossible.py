@@ -26,7 +26,7 @@ def second_law_violated(context: Context) -> Iterator[Finding]:
             f" and {len(group) - MOST_NAMED} more" if group[MOST_NAMED:] else ""
         )
         text = (
-            f"What is described for {named} is impossible: entropy would be destroyed at {{0}}. Do not act on these "
+            f"What is described for {named} is impossible: entropy would be destroyed ({{0}}). Do not act on these "
             "numbers; check the readings, the directions, and what else crosses the boundary."
         )
         yield Finding(text, group[0], ((_entropy_kind(context, check.boundary), -check.generation),))

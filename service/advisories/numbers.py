@@ -35,6 +35,18 @@ def limit_crossed(context: Context) -> Iterator[Finding]:
             yield Finding(text, limit.of, ((kind, value), (kind, bound), *times), grade)
 
 
+def limit_not_checked(context: Context) -> Iterator[Finding]:
+    """A limit on a quantity that nothing determines."""
+    transient = context.solution.transient
+    for limit in context.built.case.limits:
+        over_time = transient is not None and limit.of in transient.extremes
+        if not over_time and context.value(limit.of) is None:
+            text = (
+                f"{limit.of} was not found, so that its limit could not be checked. Ask for it to see what is missing."
+            )
+            yield Finding(text, limit.of)
+
+
 def _kind(context: Context, address: str) -> str:
     transient = context.solution.transient
     if transient is not None and address in transient.kinds:

@@ -44,7 +44,7 @@ RULES: tuple[Rule, ...] = (
     Rule(
         "temperature-impossible", ("WARNING",), exchangers.temperature_impossible, SECOND_LAW,
         "In a rated exchanger an outlet lies beyond the inlet temperature of the other stream, or in parallel flow the "
-        "cold outlet beyond the hot one.",
+        "cold outlet beyond the hot one, or the temperatures cross by more than one shell pass can reach.",
     ),
     Rule(
         "internal-temperature-cross", ("WARNING",), exchangers.internal_cross, SECOND_LAW,
@@ -204,6 +204,10 @@ RULES: tuple[Rule, ...] = (
         "high-velocity", ("NOTICE",), plant.high_velocity,
         f"{PRACTICE}: 5 m/s for liquids, 25 m/s for wet steam, 60 m/s for gases and steam",
         "The velocity in a stream with a bore lies above what lines are built for. Outlets of relations are left out.",
+    ),
+    Rule(
+        "limit-not-checked", ("NOTICE",), numbers.limit_not_checked, "limit stated in the case",
+        "A limit is on a quantity that neither the case nor its equations determine.",
     ),
     Rule(
         "stopped-early", ("NOTICE",), numbers.stopped_early, "course of the calculation",

@@ -196,9 +196,21 @@ def shop_gas(p: str) -> Document:
     }
 
 
+def split(limited_stream: str) -> Document:
+    """A branch whose inlet is told, and of whose outlets only the flows are."""
+    flows = {"b": "2 kg/s", "c": "1 kg/s"}
+    streams: list[Document] = [
+        {"id": "a", "to": "tee", "fluid": "water", "mass_flow": "?", "state": {"p": "3 bar", "T": "20 degC"}}
+    ]
+    streams += [{"id": name, "from": "tee", "mass_flow": flow, "state": {"p": "2 bar"}} for name, flow in flows.items()]
+    limit = {"of": f"{limited_stream}.T", "max": "30 degC"}
+    return {"system": "steady_flow", "boundaries": [{"id": "tee"}], "streams": streams, "limits": [limit]}
+
+
 STEAM, COOL = {"p": "30 bar", "T": "400 degC"}, {"p": "3 bar", "T": "20 degC"}
 PAIRS: dict[str, tuple[Callable[[], Document], Callable[[], Document]]] = {
     "limit-crossed": (lambda: limited("370 degC"), lambda: limited("380 degC")),
+    "limit-not-checked": (lambda: split("c"), lambda: split("a")),
     "second-law-violated": (
         lambda: machine("water", STEAM, {"p": "0.5 bar", "x": "0.7"}),
         lambda: machine("water", STEAM, {"p": "0.5 bar", "x": "0.95"}),

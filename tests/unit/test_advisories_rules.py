@@ -95,7 +95,7 @@ def test_the_second_law_is_told_with_the_entropy_that_would_be_destroyed() -> No
     document = machine("water", STEAM, {"p": "0.5 bar", "x": "0.7"})
     (check,) = OPERATIONS.solve(copy.deepcopy(document))["checks"]["entropy"]
     message = only(document, "second-law-violated")["message"]
-    assert f"destroyed at {-check['generation']['value']:.5g} {check['generation']['unit']}" in message
+    assert f"destroyed ({-check['generation']['value']:.5g} {check['generation']['unit']})" in message
 
 
 def test_sides_that_are_checked_together_are_named_together() -> None:
@@ -155,6 +155,12 @@ def test_a_cross_in_parallel_flow_is_impossible() -> None:
     assert told(exchanger("62 degC"), "temperature-cross")
     assert told(exchanger("62 degC", "parallel_flow"), "temperature-impossible")
     assert not told(exchanger("62 degC", "parallel_flow"), "temperature-cross")
+
+
+def test_a_cross_that_one_shell_pass_cannot_reach_is_impossible() -> None:
+    """R = 0.75, P = 0.75: beyond the P of 2/(1 + R + sqrt(1 + R^2)) = 2/3 at which F vanishes (Bowman 1940)."""
+    assert told(exchanger("65 degC", "shell_and_tube"), "temperature-impossible")
+    assert not told(exchanger("58 degC", "shell_and_tube"), "temperature-impossible")  # P = 0.63
 
 
 def test_a_fuel_cannot_give_more_than_its_gross_heating_value() -> None:
