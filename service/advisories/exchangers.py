@@ -37,7 +37,7 @@ def _exchangers(context: Context) -> Iterator[tuple[Relation, dict[str, StreamSt
 def _factor(relation: Relation, T: tuple[float, ...]) -> float:
     """F of one shell pass [-]; 1 for other arrangements, 0 where one shell pass cannot reach these temperatures."""
     hi, ho, ci, co = T
-    if relation.arrangement != "shell_and_tube" or co == ci or hi == ci or hi == ho:
+    if relation.arrangement != "shell_and_tube" or not (hi > ho and co > ci and hi > ci):
         return 1.0
     R, P = np.float64((hi - ho) / (co - ci)), np.float64((co - ci) / (hi - ci))  # which divide by zero quietly
     factor = float(correction_factor(R, P))
