@@ -36,7 +36,7 @@ HALF_A_DIGIT = 5e-9
 NOT_ARITHMETIC = re.compile(r"[;]|\b[FG]\(|[a-zA-Z_]+\([^()]* = ")
 """Property look-ups and functions that stand for more than arithmetic."""
 
-_QUANTITY = re.compile(r"\((-?[0-9.]+(?:e[+-]?[0-9]+)?) ([^()]+)\)")
+_QUANTITY = re.compile(r"\((-?[0-9.]+(?:e[+-]?[0-9]+)?) ([^()−+·][^()]*)\)")
 _CONSTANT = re.compile(r"(?<![\w.])([0-9][0-9.]*(?:e[+-]?[0-9]+)?) (m/s²|kg/m³ \(normal\)|kg/mol)")
 
 
@@ -62,7 +62,16 @@ def recomputed(formula: str) -> Any:
     """What a formula with numbers comes to, worked out by pint."""
     text = _CONSTANT.sub(lambda m: f"({m[1]} {m[2].replace('kg/m³ (normal)', 'kg/Nm3')})", formula)
     text = _QUANTITY.sub(r"(quantity('\1', '\2'))", text)
-    for sign, python in (("·", "*"), ("−", "-"), ("²", "**2"), ("³", "**3"), ("½", "0.5"), ("π", "pi"), ("√", "sqrt")):
+    for sign, python in (
+        ("·", "*"),
+        ("−", "-"),
+        ("²", "**2"),
+        ("³", "**3"),
+        ("½", "0.5"),
+        ("π", "pi"),
+        ("√", "sqrt"),
+        ("^", "**"),
+    ):
         text = text.replace(sign, python)
     names = {"quantity": quantity, "pi": math.pi, "ln": _ln, "sqrt": lambda v: v**0.5, "min": min}
     return eval(text, names)
