@@ -9,6 +9,7 @@ from typing import Literal
 
 from service.balance.case import Case
 from service.balance.properties import STATE
+from service.fluids.protocol import State
 from service.fluids.refusals import plain
 from service.solvers.rate_form.plant import Moment, Plant, Vector
 from service.solvers.rate_form.vessels import LEAST, Vessel
@@ -19,7 +20,8 @@ AS_GOOD_AS = 1e-7
 WARM = {"liquid": -1e-9, "vapour": 1.0 + 1e-9, "gas": 1.0 + 1e-9, "supercritical": 1.0 + 1e-9}
 """Vapour fraction that stands for a single phase where a condition is on x."""
 
-MARGIN = 1e-5  # [K] above the triple point, where the property models still answer
+MARGIN, CLOSE = 1e-5, 1e-2
+"""[K] above the triple point: where the property models still answer, and where a refusal means that it freezes."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -95,15 +97,9 @@ def _of_vessel(plant: Plant, n: int, vessel: Vessel) -> Sequence[Watch]:
         )
     if limits.T_triple is not None and limits.T_min <= limits.T_triple + MARGIN:
         coldest = limits.T_triple + MARGIN
-
-        def freezing(moment: Moment, y: Vector) -> str:
-            p = shown("pressure", moment.held[n].state.values["p"])
-            return (
-                f"{name} cools to the triple point of {vessel.fluid.name}, {shown('temperature', coldest)}, at {p}: "
-                "it freezes, and its property model does not cover the solid"
-            )
-
-        found.append(Watch(lambda m, y: m.held[n].state.values["T"] - coldest, freezing))
+        found.append(
+            Watch(lambda m, y: m.held[n].state.values["T"] - coldest, lambda m, y: _freezing(vessel, m.held[n].state))
+        )
     warmest = limits.T_max * (1 - 1e-9)
     found.append(
         Watch(
@@ -114,6 +110,23 @@ def _of_vessel(plant: Plant, n: int, vessel: Vessel) -> Sequence[Watch]:
         )
     )
     return found
+
+
+def _freezing(vessel: Vessel, state: State) -> str:
+    T, p = shown("temperature", state.values["T"]), shown("pressure", state.values["p"])
+    return (
+        f"{vessel.id} cools to the triple point of {vessel.fluid.name} ({T}, {p}): it freezes, and its property model "
+        "does not cover the solid"
+    )
+
+
+def freezing(plant: Plant, moment: Moment) -> str:
+    """Which vessel is as good as at its triple point; "" where none is."""
+    for vessel, held in zip(plant.vessels, moment.held, strict=True):
+        triple = vessel.fluid.limits.T_triple
+        if triple is not None and held.state.values["T"] < triple + CLOSE:
+            return _freezing(vessel, held.state)
+    return ""
 
 
 def _rest(plant: Plant, i: int) -> Watch:

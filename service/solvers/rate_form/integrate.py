@@ -19,7 +19,7 @@ from scipy.integrate import BDF, DOP853
 from scipy.optimize import brentq
 
 from service.errors import CaseError, Issue, NotConverged, TimeBudgetExceeded
-from service.solvers.rate_form.events import Watch, lacking
+from service.solvers.rate_form.events import Watch, freezing, lacking
 from service.solvers.rate_form.path import Path, Piece
 from service.solvers.rate_form.plant import Moment, OutOfTime, Plant, Vector
 
@@ -161,7 +161,8 @@ class Integration:
         self.step_size = 0.2 * tried
         lost = self.step_size < SMALLEST * max(course.t, 1e-6) or course.failures > MOST_FAILURES
         if lost:
-            self._end("stop", course.t, course.y, f"no state is found beyond it. {error.detail}")
+            reason = freezing(self.plant, self.plant.moment(course.t, course.y))
+            self._end("stop", course.t, course.y, reason or f"no state is found beyond it ({error.detail.rstrip('.')})")
         return lost
 
     # -- events ------------------------------------------------------------------------------------------------------
