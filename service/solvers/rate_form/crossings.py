@@ -43,7 +43,10 @@ class Course:
 
 @dataclass(slots=True)
 class Carried:
-    """A stream at a moment: mass flow [kg/s] in its stated direction, the state it carries, its energies [J/kg]."""
+    """A stream at a moment: mass flow [kg/s] in its stated direction, the state it carries, its energies [J/kg].
+
+    Of a restriction: fall is (p1 − p2)/p1, solid tells that its throat would lie below the triple point.
+    """
 
     mass_flow: float
     state: State
@@ -51,6 +54,7 @@ class Carried:
     kinetic: float = 0.0
     choked: bool = False
     fall: float = math.inf
+    solid: bool = False
 
 
 @dataclass(slots=True)
@@ -129,7 +133,8 @@ class Flow:
         if self.bore is not None:
             velocity = mass_flow / (state.values["rho"] * 0.25 * math.pi * self.bore**2)
         choked = self.throat is not None and self.throat.choked
-        return Carried(mass_flow, state, state.values["h"], 0.5 * velocity * velocity, choked, fall)
+        solid = self.throat is not None and self.throat.below_triple
+        return Carried(mass_flow, state, state.values["h"], 0.5 * velocity * velocity, choked, fall, solid)
 
 
 @dataclass(slots=True)

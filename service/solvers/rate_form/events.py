@@ -42,7 +42,9 @@ def watches(case: Case, plant: Plant) -> list[Watch]:
     found = [_condition(plant, of, q.kind, q.value) for of, q in case.until.conditions if q.value is not None]
     for n, vessel in enumerate(plant.vessels):
         found += list(_of_vessel(plant, n, vessel))
-    found += [_rest(plant, i) for i, flow in enumerate(plant.flows) if flow.throat is not None]
+    for i, flow in enumerate(plant.flows):
+        if flow.throat is not None:
+            found += [_rest(plant, i), _solid(plant, i), _choked(plant, i)]
     return found
 
 
@@ -87,7 +89,12 @@ def _of_vessel(plant: Plant, n: int, vessel: Vessel) -> Sequence[Watch]:
     found = []
     if vessel.mass > 0.0:
         least = LEAST * vessel.mass_scale
-        found.append(Watch(lambda m, y: m.held[n].mass - least, lambda m, y: f"{name} is empty"))
+        found.append(
+            Watch(
+                lambda m, y: m.held[n].mass - least,
+                lambda m, y: f"{name} is empty: less than a millionth of its first content is left",
+            )
+        )
     if vessel.volume is None and math.isfinite(vessel.capacity):
         found.append(
             Watch(
@@ -145,8 +152,32 @@ def _rest(plant: Plant, i: int) -> Watch:
     return Watch(gap, text, "")
 
 
+def _solid(plant: Plant, i: int) -> Watch:
+    """Solid would form in the throat of a restriction."""
+    flow = plant.flows[i]
+    text = (
+        f"the throat of {flow.id} passes the triple point of {flow.fluid.name}: solid may form and block it; "
+        "its flow is taken as that at the triple pressure"
+    )
+    return Watch(lambda m, y: 0.5 - m.carried[i].solid, lambda m, y: text, "")
+
+
+def _choked(plant: Plant, i: int) -> Watch:
+    """The flow through a restriction becomes choked, or no longer is."""
+    name = plant.flows[i].id
+
+    def text(moment: Moment, y: Vector) -> str:
+        return f"the flow of {name} changes between choked and not choked"
+
+    return Watch(lambda m, y: 0.5 - m.carried[i].choked, text, "")
+
+
 def lacking(plant: Plant, moment: Moment) -> str:
-    """Why a stream cannot draw what it draws; "" where all can."""
+    """Why a stream cannot draw what it draws, or an open tank is no longer one of liquid; "" where all is well."""
+    for vessel, held in zip(plant.vessels, moment.held, strict=True):
+        if vessel.volume is None and held.state.phase in ("two_phase", "vapour", "gas"):
+            T = shown("temperature", held.state.values["T"])
+            return f"{vessel.id} boils at {T}, which an open tank of liquid does not cover"
     for flow in plant.flows:
         if flow.source is None or flow.stream.draws == "mixed":
             continue

@@ -128,7 +128,7 @@ class Plant:
         carried = [flow.at(t, within, held) for flow in self.flows]
         for i, (flow, now) in enumerate(zip(self.flows, carried, strict=True)):
             self._add_flow(slope, flow, now, self.flow_at + PER_FLOW * i)
-        rates = [exchange.at(t, within, held) for exchange in self.exchanges]
+        rates = [exchange.at(t, within, held) * self._touched(exchange, held) for exchange in self.exchanges]
         for i, (exchange, rate) in enumerate(zip(self.exchanges, rates, strict=True)):
             at = self.exchange_at + PER_EXCHANGE * i
             slope[at] = rate
@@ -141,6 +141,13 @@ class Plant:
             self._add_wall(slope, n, held[n], self.ambient_at + place)
         return Moment(t, held, carried, rates, np.array(slope) / self.scale)
 
+    def _touched(self, exchange: Exchange, held: Sequence[Held]) -> float:
+        """1, or less where a law would heat a vessel that holds nothing yet."""
+        if exchange.UA is None:
+            return 1.0
+        ends = [n for n in (exchange.source, exchange.target) if n is not None]
+        return min(self.vessels[n].touched(held[n].mass) for n in ends)
+
     def _add_flow(self, slope: list[float], flow: Flow, now: Carried, at: int) -> None:
         m = now.mass_flow
         slope[at : at + PER_FLOW] = m, m * now.enthalpy, m * now.kinetic, m * now.state.values["s"]
@@ -152,7 +159,8 @@ class Plant:
     def _add_wall(self, slope: list[float], n: int, held: Held, at: int) -> None:
         wall = self.vessels[n].wall
         assert wall is not None
-        inward = wall.h_inside * wall.area * (held.wall - held.state.values["T"])
+        touched = self.vessels[n].touched(held.mass)
+        inward = touched * wall.h_inside * wall.area * (held.wall - held.state.values["T"])
         from_ambient = wall.h_outside * wall.area * (wall.ambient - held.wall)
         slope[2 * n + 1] += inward
         slope[self.wall_at[n]] = (from_ambient - inward) / wall.capacity

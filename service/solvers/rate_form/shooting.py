@@ -19,11 +19,13 @@ from service.errors import CaseError, Issue, NoSolution, OverSpecified, TimeBudg
 from service.fluids.protocol import Fluid
 from service.solvers.rate_form.assembly import assemble
 from service.solvers.rate_form.history import kind_of
+from service.solvers.rate_form.integrate import RTOL
 from service.solvers.rate_form.run import Done, integrate
 
 EXPANSIONS = 14
-SEARCHING = 1e-6
-"""Relative tolerance of the integrations that only look for a bracket."""
+ROOT = 1e-10
+SEARCHING = 1e-5
+"""Relative tolerances: of the root, and of the integrations that only look for a bracket."""
 
 FIRST_GUESS = {"power": 1e4, "temperature": 350.0}
 
@@ -72,7 +74,8 @@ class _Shot:
         self.case, self.fluids, self.deadline = case, fluids, deadline
         self.unknown, self.target = unknown, target
         self.trials = 0
-        self.last: tuple[float, Done] | None = None
+        self.misses: dict[float, float] = {}
+        self.done: dict[float, Done] = {}
         value = target.value.value
         if value is None:
             text = f"The target of {target.of} has no value."
@@ -82,8 +85,10 @@ class _Shot:
 
     def solve(self) -> Done:
         a, b = self._bracket()
-        root = float(brentq(self.miss, a, b, xtol=1e-12 * max(abs(a), abs(b)), rtol=1e-11))
-        done = integrate(self.case, self.fluids, {self.unknown.address: root}, self.deadline)
+        root = float(brentq(self.miss, a, b, xtol=ROOT * max(abs(a), abs(b)), rtol=ROOT))
+        done = self.done.get(root) if self.target.at is None else None
+        if done is None:
+            done = integrate(self.case, self.fluids, {self.unknown.address: root}, self.deadline)
         done.trials = self.trials + 1
         stopped_early = done.course.ended_by == "stop" and (self.target.at is None or done.course.t < self.target.at)
         if stopped_early:
@@ -91,8 +96,10 @@ class _Shot:
             raise NoSolution(text, [Issue(text, self.unknown.address, "Look at the target and its time.")])
         return done
 
-    def miss(self, value: float, rtol: float = 1e-8) -> float:
+    def miss(self, value: float, rtol: float = RTOL) -> float:
         """Target's quantity minus its goal [SI], with the unknown at a value [SI]."""
+        if rtol == RTOL and value in self.misses:
+            return self.misses[value]
         self.trials += 1
         try:
             done = integrate(self.case, self.fluids, {self.unknown.address: value}, self.deadline, self.target.at, rtol)
@@ -105,6 +112,9 @@ class _Shot:
         if not math.isfinite(found):
             text = f"{self.target.of} has no meaning where the target is set."
             raise NoSolution(text, [Issue(text, self.target.of, "Choose another quantity.", self.target.pointer)])
+        if rtol == RTOL:
+            self.misses[value] = found - self.goal
+            self.done = {value: done}
         return found - self.goal
 
     def _try(self, value: float) -> float:

@@ -9,8 +9,8 @@ from service.balance.case import STANDARD_GRAVITY, Content
 from service.fluids.protocol import Fluid, State
 from service.fluids.warm_flash import DensityEnergyFlash
 
-LEAST = 1e-6
-"""Share of a vessel's mass [-] below which it counts as empty."""
+LEAST, FIRST = 1e-6, 1e-4
+"""Shares of a vessel's mass [-]: it is empty below the one; having begun empty, it feels heat fully above the other."""
 
 
 @dataclass(slots=True)
@@ -93,6 +93,8 @@ class Vessel:
             )
         return self.flash.state(mass / self.volume, energy / mass)
 
-    def internal_energy(self, held: Held) -> float:
-        """[J]"""
-        return held.mass * held.state.values["u"] if held.mass > 0.0 else 0.0
+    def touched(self, mass: float) -> float:
+        """Share of a heat transfer that acts while a vessel that begins empty has nothing yet to be heated."""
+        if self.mass > 0.0:
+            return 1.0
+        return min(max(mass / (FIRST * self.mass_scale), 0.0), 1.0)
