@@ -74,7 +74,10 @@ def _ideal_gas_flux(fluid: Fluid, p1: float, T1: float, p2: float) -> MassFlux:
 
 def _isentropic_flux(fluid: Fluid, p1: float, h1: float, s1: float, p2: float) -> MassFlux:
     def flux(p: float) -> float:
-        state = fluid.state(("p", "s"), (p, s1)).values
+        try:
+            state = fluid.state(("p", "s"), (p, s1)).values
+        except CaseError:  # below the triple point the model ends; a throat there is not looked for
+            return 0.0
         return float(state["rho"] * math.sqrt(max(2 * (h1 - state["h"]), 0.0)))
 
     best = minimize_scalar(lambda p: -flux(p), bounds=(p2, p1), method="bounded", options={"xatol": 1e-7 * p1})
