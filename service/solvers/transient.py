@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+from service.advisories import advise
+from service.balance.builder import BuiltCase
 from service.balance.case import Case
 from service.balance.solution import Solution
+from service.engine.execute import Run
 from service.fluids.catalogue import FluidCatalogue
 from service.solvers.pipeline import resolve_fluids
 from service.solvers.rate_form import shooting
@@ -18,4 +21,7 @@ def solve(case: Case, catalogue: FluidCatalogue, deadline: float | None = None) 
     """
     fluids = resolve_fluids(case, catalogue)
     done = shooting.solve(case, fluids, deadline)
-    return tell(case, fluids, done)
+    solution = tell(case, fluids, done)
+    # the rules look at the case, its states and its course over time; there is no model of equations behind these
+    solution.advisories = advise(BuiltCase(case, fluids), Run([]), solution)
+    return solution
