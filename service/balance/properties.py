@@ -77,6 +77,19 @@ PROCESS: Mapping[str, Trait] = {
     "external_pressure": Trait("pressure", 1e5, 0.0, 1e9),
 }
 
+WALL: Mapping[str, Trait] = {
+    "mass": Trait("mass", 100.0),
+    "cp": Trait("specific_entropy", 500.0),
+    "area": Trait("area", 1.0),
+    "h_inside": Trait("heat_transfer_coefficient", 100.0),
+    "h_outside": Trait("heat_transfer_coefficient", 10.0),
+    "ambient_temperature": Trait("temperature", 300.0, 0.0, 1e4),
+    "temperature": Trait("temperature", 300.0, 0.0, 1e4),
+    "minimum_temperature": Trait("temperature", 250.0, 0.0, 1e4),
+}
+"""Quantities of a content's wall (`tank.wall.mass`): temperature is that at the beginning, minimum_temperature that of
+the design."""
+
 RELATION: Mapping[str, Trait] = {
     "isentropic_efficiency": Trait("dimensionless", 1.0, 1e-3, 10.0),
     "polytropic_efficiency": Trait("dimensionless", 1.0, 1e-3, 10.0),

@@ -5,8 +5,9 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 
 from service.wire.pointers import nearest_existing, pointer, token
-from service.wire.suggest import did_you_mean, quoted
+from service.wire.suggest import did_you_mean, listed, quoted
 from service.wire.vocabulary import (
+    ALONG,
     CONTENT,
     DIFFERENCE_OF,
     ENDS,
@@ -18,11 +19,15 @@ from service.wire.vocabulary import (
     STATE,
     STREAM_ALL,
     TRANSFER,
+    WALL,
 )
 
 LISTS = ("streams", "transfers", "relations")
 CONTENTS = "contents"
 WHAT = {"streams": "stream", "transfers": "transfer", "relations": "relation", CONTENTS: "content"}
+UNTIL_TIME = "until.time"
+"""Address of the time at which a transient ends."""
+
 DEEPEST_RELATION = 20
 """Relations over values of relations, one inside the other."""
 
@@ -62,9 +67,26 @@ def stages(content: Mapping[str, object]) -> list[tuple[str, Mapping[str, object
     return [(f"stage-{i + 1}", stage) for i, stage in enumerate(found) if isinstance(stage, dict)]
 
 
-def content_properties(content: Mapping[str, object]) -> dict[str, str]:
-    """Every quantity of a content, by its address without the content's id → quantity kind."""
+def in_rate_form(document: object) -> bool:
+    """Whether the request is a transient that is integrated in time."""
+    return isinstance(document, dict) and document.get("system") == "transient" and document.get("form") != "integrated"
+
+
+def content_properties(content: Mapping[str, object], over_time: bool = False) -> dict[str, str]:
+    """Every quantity of a content, by its address without the content's id → quantity kind.
+
+    over_time: those that the rate form has, `p` and `wall.T` at any time beside `initial.p` and `final.p`.
+    """
     table = dict(CONTENT)
+    if over_time:
+        table |= ALONG
+        for end in ENDS:
+            table |= {f"{end}.{name}": kind for name, kind in {**STATE, **SIZE}.items()}
+        if isinstance(content.get("wall"), dict):
+            table |= {"wall.T": "temperature", "final.wall.T": "temperature"}
+            table |= {f"wall.{name}": kind for name, kind in WALL.items()}
+        del table["expansion_work"]
+        return table
     named = stages(content)
     between = [name for name, _ in named[:-1]]
     for end in (*ENDS, *between):
@@ -80,6 +102,7 @@ class AddressBook:
 
     def __init__(self, document: object) -> None:
         self.document = document
+        self.over_time = in_rate_form(document)
         self.entries: dict[str, tuple[str, int, Mapping[str, object]]] = {}
         self._value_kinds: dict[str, str] = {}  # found once each: sums of sums refer to one another
         for name in LISTS:
@@ -103,7 +126,7 @@ class AddressBook:
         if name == "streams":
             return STREAM_ALL
         if name == CONTENTS:
-            return content_properties(body)
+            return content_properties(body, self.over_time)
         kind = body.get("kind")
         if name == "transfers":
             table = TRANSFER.get(kind, {}) if isinstance(kind, str) else {}
@@ -122,6 +145,8 @@ class AddressBook:
 
     def kind(self, address: str) -> str | None:
         """The quantity kind of an address; None where no such quantity can exist."""
+        if address == UNTIL_TIME and self.over_time:
+            return "time"
         item, dot, name = address.partition(".")
         return self.properties(item).get(name) if dot else None
 
@@ -165,20 +190,34 @@ class AddressBook:
         if item not in self.entries:
             known = "no stream, content, transfer or relation of the case"
             detail = f"{quoted(address)} speaks of {quoted(item)}, which is {known}."
-            return detail, did_you_mean(item, self.entries)
+            return detail, self._held_there(item, name) or did_you_mean(item, self.entries)
         options = self.properties(item)
         what = WHAT[self.entries[item][0]]
         detail = f"The {what} {quoted(item)} has no quantity {quoted(name)}."
         if what == "transfer" and name in HEAT_LAW and self.entries[item][2].get("kind") == "heat":
             return detail, f'It exists only where the transfer follows a law: add "law": {{"{name}": ...}}.'
+        if what == "content" and name in ALONG:
+            return detail, f"Say at which end: {item}.initial.{name} or {item}.final.{name}."
+        if what == "content" and name.startswith("wall.") and not any(option.startswith("wall.") for option in options):
+            return detail, "It has no `wall`."
         if what == "relation" and not options:
             return detail, "A relation of this kind has no quantity of its own."
         return detail, did_you_mean(name, options)
+
+    def _held_there(self, boundary: str, name: str) -> str:
+        """A hint for an address that begins with the boundary instead of what it holds."""
+        for place, item in items(self.document, "boundaries"):
+            held = [c for c, at in self.boundary_of.items() if at == place]
+            if item.get("id") == boundary and held:
+                return f"That is a boundary; of what it holds say {listed([f'{c}.{name}' for c in held], 'or')}."
+        return ""
 
     def locate(self, address: str) -> str:
         """The pointer of an address: the quantity itself, or where it would stand, cut to what exists."""
         if not address:
             return "#"
+        if address == UNTIL_TIME and self.over_time:
+            return nearest_existing(self.document, "#/until/time")
         item, _, name = address.partition(".")
         entry = self.entries.get(item)
         if entry is None:
@@ -209,6 +248,8 @@ class AddressBook:
         state = body.get(end)
         if inner == "x" and isinstance(state, dict) and "x" not in state and "saturated" in state:
             inner = "saturated"
+        if self.over_time and not end and inner not in body:
+            return nearest_existing(self.document, f"{base}/initial/{token(inner)}")
         if end.startswith("stage-"):
             place = f"process/{int(end.removeprefix('stage-')) - 1}" + ("" if inner in PROCESS else "/until")
         else:

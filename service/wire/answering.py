@@ -18,6 +18,7 @@ from marshmallow import Schema, fields
 from service.balance.solution import EntropyCheck, LedgerAccount, LedgerLine, Solution, StepRecord, StreamState
 from service.wire.presenting import NO_MEANING, SINGLE_PHASE, Presenter, Shown, rounded
 from service.wire.provenance import provenance
+from service.wire.transient_part import TransientPart, asked_units
 from service.wire.vocabulary import DERIVED_STATE, SIZE, STATE, STREAM
 
 _DOUBLED = re.compile(r"\(\(([^()]*)\)\)")
@@ -53,7 +54,7 @@ class Answer:
         self.full = self.options.detail == "full"
         self.symbols = solution.names.__getitem__
         self.numbers = presenter.numbers(solution.values, solution.kinds)
-        self.asked = {q.address: q.unit for q in solution.case.quantities() if q.wanted and q.unit}
+        self.asked = asked_units(solution.case)
 
     def document(self, request: object) -> dict[str, Any]:
         """The whole answer. `request` is what it answers, for the hash."""
@@ -64,6 +65,8 @@ class Answer:
         answer["answers"] = self._answers()
         answer["assumptions"] = list(solution.assumptions)
         answer["states"] = {state.stream: self.state(state) for state in solution.states}
+        if solution.transient is not None:
+            answer["transient"] = TransientPart(solution.case, solution.transient, self.presenter).document()
         answer["ledger"] = self._ledger()
         if self.full:
             answer["steps"] = [self._step(step, str(number)) for number, step in enumerate(solution.steps, 1)]

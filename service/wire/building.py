@@ -33,9 +33,11 @@ from service.units import UnitTable
 from service.wire.addresses import AddressBook, item_id, items
 from service.wire.contents import build_contents
 from service.wire.findings import Findings
+from service.wire.over_time import read_ending, read_history, read_tables, read_targets
 from service.wire.pointers import token
 from service.wire.quantities import QuantityReader
 from service.wire.vocabulary import (
+    FLOWS,
     FLUID,
     FOLLOWS_ADDRESSES,
     HEAT_LAW,
@@ -46,6 +48,7 @@ from service.wire.vocabulary import (
     STATE,
     STREAM,
     SYSTEMS,
+    TABLED,
     TRANSFER,
 )
 
@@ -114,17 +117,27 @@ class BoundarySchema(_ItemSchema):
         return Boundary(data["id"], _READING.get().base)
 
 
+_FLOW_KINDS = {name: STREAM[name] for name in FLOWS}
+
+
+def _tabled(table: Mapping[str, str]) -> Mapping[str, str]:
+    """The quantities of a transfer that may be tables over time."""
+    return {name: kind for name, kind in TABLED.items() if name in table}
+
+
 class StreamSchema(_ItemSchema):
     id = Plain()
     source = Plain(data_key="from", load_default=None)
     target = Plain(data_key="to", load_default=None)
     fluid = Plain(load_default=None)
     side = Plain(load_default=None)
+    draws = Plain(load_default="mixed")
 
     @post_load(pass_original=True)
     def build(self, data: Body, original: Body, **_: Any) -> Stream:
         reading = _READING.get()
-        quantities = reading.quantities(original, STREAM, reading.base)
+        body, tables = read_tables(original, _FLOW_KINDS, reading.id, reading.base, reading.reader)
+        quantities = reading.quantities(body, STREAM, reading.base)
         state = original.get("state")
         if state:
             quantities |= reading.quantities(state, STATE, f"{reading.base}/state")
@@ -133,7 +146,9 @@ class StreamSchema(_ItemSchema):
         side = data["side"]
         leaves, enters = (side.get("from"), side.get("to")) if isinstance(side, dict) else (side, side)
         source, target = data["source"], data["target"]
-        return Stream(data["id"], source, target, data["fluid"], quantities, leaves, enters, reading.base)
+        return Stream(
+            data["id"], source, target, data["fluid"], quantities, leaves, enters, reading.base, data["draws"], tables
+        )
 
 
 def _saturated(reading: _Reading, state: Body, quantities: dict[str, Quantity]) -> None:
@@ -166,7 +181,8 @@ class TransferSchema(_ItemSchema):
         table = TRANSFER[data["kind"]]
         if "heating_value" in original:
             table = {**table, "heating_value": self._heating_value_kind(reading, original)}
-        quantities = reading.quantities(original, table, reading.base)
+        body, tables = read_tables(original, _tabled(table), reading.id, reading.base, reading.reader)
+        quantities = reading.quantities(body, table, reading.base)
         law = data["law"]
         if law is not None:
             quantities |= reading.quantities(law, HEAT_LAW, f"{reading.base}/law")
@@ -180,6 +196,7 @@ class TransferSchema(_ItemSchema):
             law.get("of") if law else None,
             data["basis"],
             reading.base,
+            tables,
         )
 
     @staticmethod
@@ -336,6 +353,9 @@ class CaseBuilder:
             self.answer(document),
             tuple(build_contents(document, self.reader)),
             "integrated" if document.get("form") == "integrated" else "rate",
+            read_ending(document, book, self.reader),
+            tuple(read_targets(document, book, self.reader)),
+            read_history(document),
         )
 
     @staticmethod

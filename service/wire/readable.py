@@ -101,7 +101,7 @@ def _account(account: dict[str, Any]) -> Iterator[str]:
 
 def _figure(quantity: dict[str, Any]) -> str:
     value = quantity["value"]
-    return f"{'—' if value is None else f'{value:,.4f}':>16} {quantity['unit']:8}"
+    return f"{'—' if value is None else f'{value:z,.4f}':>16} {quantity['unit']:8}"
 
 
 def _steps(answer: dict[str, Any]) -> str:

@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 
 from service.errors import SchemaViolation
 from service.wire.addresses import AddressBook, contents, item_id, items
-from service.wire.contents import check_system
 from service.wire.findings import Findings
 from service.wire.suggest import did_you_mean, listed, quoted
+from service.wire.systems import check_system
 from service.wire.vocabulary import FOLLOWS_ADDRESSES, RELATION, RELATION_STREAMS
 
 
@@ -38,11 +38,26 @@ def check_references(document: object, book: AddressBook, findings: Findings) ->
                 pointer=f"#/relations/{number}/area",
                 hint="Keep one of them.",
             )
-    for number, item in items(document, "limits"):
-        of = item.get("of")
-        if isinstance(of, str) and book.kind(of) is None:
-            detail, hint = book.what_is_wrong(of)
-            findings.add(SchemaViolation, detail, pointer=f"#/limits/{number}/of", hint=hint)
+    for place, address in _named(document):
+        if book.kind(address) is None:
+            detail, hint = book.what_is_wrong(address)
+            findings.add(SchemaViolation, detail, pointer=place, hint=hint)
+
+
+def _named(document: object) -> Iterator[tuple[str, str]]:
+    """(pointer, address) of every address that limits, conditions, targets and the history name."""
+    until = document.get("until") if isinstance(document, dict) else None
+    spoken = [(f"#/{group}", items(document, group)) for group in ("limits", "targets")]
+    spoken.append(("#/until/conditions", items(until, "conditions")))
+    for base, found in spoken:
+        for number, item in found:
+            if isinstance(item.get("of"), str):
+                yield f"{base}/{number}/of", str(item["of"])
+    history = document.get("history") if isinstance(document, dict) else None
+    columns = history.get("columns") if isinstance(history, dict) else None
+    for number, address in enumerate(columns if isinstance(columns, list) else ()):
+        if isinstance(address, str):
+            yield f"#/history/columns/{number}", address
 
 
 def _boundaries(document: object, findings: Findings) -> Mapping[str, int]:

@@ -25,6 +25,12 @@ def time_unit(case: Case, presenter: Presenter, end: float) -> Unit:
     return presenter.unit("time", "min" if end < LONG else "h")
 
 
+def asked_units(case: Case) -> dict[str, str]:
+    """Address → the unit in which the case asks for it."""
+    wanted = [*case.quantities(), *([case.until.time] if case.until.time is not None else [])]
+    return {quantity.address: quantity.unit for quantity in wanted if quantity.wanted and quantity.unit}
+
+
 def units_of_columns(case: Case) -> dict[str, str]:
     """Address → the unit in which the case itself speaks of it: asked of its end, a condition, a target, a limit."""
     found: dict[str, str] = {}
@@ -34,10 +40,7 @@ def units_of_columns(case: Case) -> dict[str, str]:
     for address, quantity in spoken:
         if quantity is not None and quantity.unit:
             found[address] = quantity.unit
-    for quantity in case.quantities():
-        if quantity.wanted and quantity.unit:
-            found[quantity.address.replace(".final.", ".", 1)] = quantity.unit
-    return found
+    return found | {address.replace(".final.", ".", 1): unit for address, unit in asked_units(case).items()}
 
 
 class TransientPart:
@@ -51,20 +54,31 @@ class TransientPart:
     def document(self) -> dict[str, Any]:
         """The member `transient` of the answer."""
         result = self.result
-        out: dict[str, Any] = {"end": {"reason": result.end_reason, "time": self._time(result.end_time)}}
+        reason = self._reworded(result.end_reason.removeprefix("condition "))
+        out: dict[str, Any] = {"end": {"reason": reason, "time": self._time(result.end_time)}}
         if result.stopped:
             out["stopped"] = result.stopped
         out["history"] = {
             "time": {"unit": self.time.symbol, "values": numbers(result.times / self.time.factor)},
             "columns": {address: self._column(address) for address in result.columns},
         }
-        out["events"] = [{"time": self._time(time), "event": text} for time, text in result.events]
+        out["events"] = [{"time": self._time(time), "event": self._reworded(text)} for time, text in result.events]
         out["extremes"] = {
             address: {"least": self._extreme(address, low, at_low), "largest": self._extreme(address, high, at_high)}
             for address, (low, at_low, high, at_high) in result.extremes.items()
         }
         out["method"] = {name: self._plain(value) for name, value in result.method.items()}
         return out
+
+    def _reworded(self, text: str) -> str:
+        """The text; of a condition that was reached, with its value as the case writes it."""
+        if text == "time":
+            return "the time that the case gives is over"
+        reached = [q for of, q in self.case.until.conditions if text.startswith(f"{of} reaches ")]
+        if len(reached) != 1 or reached[0].value is None:
+            return text
+        shown = self.presenter.quantity(reached[0].value, reached[0].kind, reached[0].unit)
+        return f"{reached[0].address} reaches {shown['value']:.9g} {shown['unit']}".removesuffix(" -")
 
     def _time(self, value: float) -> dict[str, object]:
         return self.presenter.quantity(value, "time", self.time.symbol, "it was not reached")

@@ -33,6 +33,31 @@ PROCESS: Mapping[str, str] = MappingProxyType({name: trait.kind for name, trait 
 
 ENDS = ("initial", "final")
 
+WALL: Mapping[str, str] = MappingProxyType({name: trait.kind for name, trait in properties.WALL.items()})
+"""Quantities of a content's wall."""
+
+ALONG = MappingProxyType({**STATE, "mass": "mass", "volume": "volume"})
+"""Properties of a content that change over time in the rate form: `tank.p`; with a wall also `tank.wall.T`."""
+
+FLOWS = ("mass_flow", "molar_flow", "volume_flow", "normal_volume_flow")
+"""Properties of a stream that may be tables over time."""
+
+TABLED = MappingProxyType({"rate": "power", "mass_flow": "mass_flow", "normal_volume_flow": "normal_volume_flow"})
+"""Properties of a transfer that may be tables over time."""
+
+DRAWS = ("mixed", "liquid", "vapour")
+BETWEEN = ("linear", "steps")
+FORMS = ("rate", "integrated")
+PROCESSES = (
+    "constant_volume",
+    "constant_pressure",
+    "isothermal",
+    "polytropic",
+    "adiabatic_reversible",
+    "constant_external_pressure",
+    "linear",
+)
+
 STREAM_ALL: Mapping[str, str] = MappingProxyType({**STREAM, **STATE})
 
 DERIVED_STATE = _table(
@@ -144,7 +169,9 @@ DETAILS = ("full", "brief")
 WORK_POSITIVE = ("into_system", "out_of_system")
 
 KIND_OF_MEMBER: Mapping[str, str] = MappingProxyType(
-    {name: kind for table in (*FLUID.values(), *RELATION.values(), *TRANSFER.values(), HEAT_LAW, SITE, STREAM_ALL)
+    {name: kind
+     for table in (WALL, CONTENT, PROCESS, *FLUID.values(), *RELATION.values(), *TRANSFER.values(), HEAT_LAW, SITE,
+                   STREAM_ALL, {"time": "time"})
      for name, kind in table.items()}
 )  # fmt: skip
 """Member → quantity kind, for examples in hints; a name that has several kinds has the usual one."""
@@ -171,6 +198,12 @@ EXAMPLES: Mapping[str, str] = {
     "volumetric_heating_value": '"36 MJ/Nm3"',
     "dimensionless": '0.85 or "85 %"',
     "humidity_ratio": '"8 g/kg"',
+    "mass": '"250 kg"',
+    "volume": '"1.2 m3"',
+    "normal_volume": '"30 Nm3"',
+    "energy": '"250 MJ"',
+    "time": '"30 min"',
+    "heat_transfer_coefficient": '"50 W/m2/K"',
 }
 """One well-formed quantity of each kind, for hints."""
 

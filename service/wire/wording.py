@@ -136,8 +136,6 @@ def _unknown_word(error: _Error, schema: Mapping[str, Any]) -> Iterator[Told]:
 
 
 def _choice(word: str, options: Sequence[str]) -> str:
-    if word == "rate" and options == ["integrated"]:
-        return "This version solves transients in their integrated form only."
     near = did_you_mean(word, options)
     return near if near.startswith("Allowed") else f"{near} Allowed here: {listed(options)}."
 

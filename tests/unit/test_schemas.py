@@ -9,6 +9,7 @@ from typing import Any
 import pytest
 from jsonschema import Draft202012Validator
 
+from service.balance.processes import PROCESS_KINDS
 from service.errors import CaseError
 from service.units import KINDS, UnitTable
 from service.wire import vocabulary
@@ -108,7 +109,7 @@ def test_every_member_of_a_request_is_described(name: str) -> None:
 
 
 def test_a_stream_has_the_members_that_the_code_knows() -> None:
-    assert members("stream") == {*vocabulary.STREAM, "id", "from", "to", "fluid", "side", "state"}
+    assert members("stream") == {*vocabulary.STREAM, "id", "from", "to", "fluid", "side", "state", "draws"}
     for name, kind in vocabulary.STREAM.items():
         assert kind_of(DEFS["stream"]["properties"][name]) == kind
 
@@ -118,6 +119,35 @@ def test_a_state_has_the_properties_that_the_code_knows() -> None:
     for name, kind in vocabulary.STATE.items():
         assert kind_of(DEFS["state"]["properties"][name]) == kind
     assert DEFS["state"]["properties"]["saturated"]["enum"] == list(vocabulary.SATURATED)
+
+
+def test_a_content_has_the_members_that_the_code_knows() -> None:
+    assert members("content") == {*vocabulary.CONTENT, *vocabulary.ENDS, "id", "fluid", "process", "wall"}
+    for name, kind in vocabulary.CONTENT.items():
+        assert kind_of(DEFS["content"]["properties"][name]) == kind
+
+
+@pytest.mark.parametrize(
+    ("name", "quantities", "words"),
+    [
+        ("content_end", {**vocabulary.STATE, **vocabulary.SIZE}, {"saturated"}),
+        ("wall", vocabulary.WALL, set()),
+        ("stage", vocabulary.PROCESS, {"kind", "until"}),
+        ("process", vocabulary.PROCESS, {"kind", "until"}),
+    ],
+)
+def test_what_belongs_to_a_content_has_the_members_that_the_code_knows(
+    name: str, quantities: Mapping[str, str], words: set[str]
+) -> None:
+    assert members(name) == {*quantities, *words}
+    for quantity, kind in quantities.items():
+        assert kind_of(DEFS[name]["properties"][quantity]) == kind
+
+
+def test_the_processes_of_the_schema_are_those_of_the_solver() -> None:
+    assert set(vocabulary.PROCESSES) == set(PROCESS_KINDS)
+    for name in ("stage", "process"):
+        assert DEFS[name]["properties"]["kind"]["enum"] == list(vocabulary.PROCESSES)
 
 
 @pytest.mark.parametrize("kind", vocabulary.TRANSFER)
@@ -163,6 +193,9 @@ def test_a_declared_fluid_has_the_quantities_that_the_code_knows(kind: str) -> N
         (DEFS["answer"]["properties"]["detail"], vocabulary.DETAILS),
         (DEFS["answer"]["properties"]["work_positive"], vocabulary.WORK_POSITIVE),
         (SCHEMAS["case"]["properties"]["system"], vocabulary.SYSTEMS),  # type: ignore[index]
+        (SCHEMAS["case"]["properties"]["form"], vocabulary.FORMS),  # type: ignore[index]
+        (DEFS["stream"]["properties"]["draws"], vocabulary.DRAWS),
+        (DEFS["quantity"]["properties"]["table"]["properties"]["between"], vocabulary.BETWEEN),
     ],
 )
 def test_the_words_of_a_schema_are_those_of_the_code(place: Mapping[str, Any], words: Any) -> None:
