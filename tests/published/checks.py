@@ -41,6 +41,10 @@ _TO_SI: dict[str, tuple[float, float]] = {
     "m3/s": (1.0, 0.0),
     "m3/min": (1.0 / 60.0, 0.0),
     "degF": (5.0 / 9.0, 0.0),  # only a mean temperature difference is printed so
+    "kJ": (1e3, 0.0),
+    "kg": (1.0, 0.0),
+    "s": (1.0, 0.0),
+    "psig": (6894.757293168, 14.7 * 6894.757293168),  # above 14.7 psia, the atmosphere of the source that prints it
 }
 
 

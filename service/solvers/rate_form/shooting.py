@@ -25,6 +25,7 @@ from service.solvers.rate_form.run import Done, integrate
 EXPANSIONS = 14
 ROOT = 1e-10
 SEARCHING = 1e-5
+DOUBT = 1e-3
 """Relative tolerances: of the root, and of the integrations that only look for a bracket."""
 
 FIRST_GUESS = {"power": 1e4, "temperature": 350.0}
@@ -155,15 +156,19 @@ class _Shot:
             tried.sort()
             for (a, fa), (b, fb) in pairwise(tried):
                 if fa * fb <= 0.0:
-                    return self._firm(a, b)
+                    return self._firm(a, fa, b, fb)
         if len(tried) < 2:
             text = f"No value of {self.unknown.address} was found with which the case can be integrated."
             raise NoSolution(text, [Issue(text, self.unknown.address, "Give `between`.")])
         self._refuse(tried[0][0], tried[-1][0], tried[0][1], tried[-1][1])
         raise AssertionError
 
-    def _firm(self, a: float, b: float) -> tuple[float, float]:
-        """The bracket at full accuracy, widened by a little where the rough one was off."""
+    def _firm(self, a: float, fa: float, b: float, fb: float) -> tuple[float, float]:
+        """The bracket; where a rough miss is too small to trust its sign, it is found at full accuracy."""
+        doubt = DOUBT * max(abs(fa), abs(fb))
+        if min(abs(fa), abs(fb)) > doubt:
+            self.misses.update({a: fa, b: fb})
+            return a, b
         for widen in (0.0, 1e-5, 1e-3):
             low, high = a - widen * (b - a), b + widen * (b - a)
             if self.miss(low) * self.miss(high) <= 0.0:
