@@ -167,7 +167,8 @@ class Polynomial:
         largest: Value = TINY
         for term in self.terms:
             size = abs(term.value(values))
-            largest = np.maximum(largest, size) if isinstance(size, np.ndarray) else max(largest, size)
+            columns = isinstance(size, np.ndarray) or isinstance(largest, np.ndarray)
+            largest = np.maximum(largest, size) if columns else max(largest, size)
         return largest
 
     def _exponent(self, variable: int) -> int | None:

@@ -15,7 +15,7 @@ from service.errors import CaseError, Issue, NotFound, SchemaViolation
 from service.fluids.catalogue import FluidCatalogue
 from service.units import UnitTable
 from service.wire import series as columns
-from service.wire.addresses import AddressBook
+from service.wire.addresses import AddressBook, in_rate_form
 from service.wire.answering import DEFERENCE, Answer
 from service.wire.catalogue_pages import describe_fluids, describe_one_fluid, describe_units
 from service.wire.findings import Findings
@@ -78,6 +78,8 @@ class Operations:
     def check(self, document: Any) -> Document:
         """The structural count of a case, without solving it. Raises CaseError."""
         case, presenter = self._parse(document)
+        if in_rate_form(document):
+            raise _not_over_time("There is no structural count of a transient in its rate form: it is integrated.")
         found = self._tell(document, presenter, lambda: solvers.check(case, self.catalogue))
         return {
             "status": "solvable",
@@ -145,6 +147,8 @@ class Operations:
             case, presenter = self._parse(case_document)
         except CaseError as error:
             raise _inside_case(error) from error
+        if in_rate_form(case_document):
+            raise _inside_case(_not_over_time("A series cannot be had of a transient in its rate form."))
         book, findings = AddressBook(case_document), Findings()
         plans = []
         for address, symbol in headers.items():
@@ -212,6 +216,11 @@ class Operations:
     def example(self, name: str) -> Document:
         """One ready case. Raises NotFound."""
         return _named("example", name, self._examples)
+
+
+def _not_over_time(detail: str) -> CaseError:
+    hint = 'Choose "form": "integrated", or post it to /v1/balances as one case.'
+    return SchemaViolation(detail, [Issue(detail, "", hint, "#/system")])
 
 
 def _named(what: str, name: str, found: Mapping[str, Document]) -> Document:

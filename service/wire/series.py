@@ -10,7 +10,7 @@ from typing import Any
 import numpy as np
 import numpy.typing as npt
 
-from service.balance.case import Case, Quantity, Relation, Stream, Transfer
+from service.balance.case import Case, Content, Quantity, Relation, Stream, Transfer
 from service.balance.solution import SeriesResult
 from service.errors import CaseError, SchemaViolation, StateOutOfRange, UnderSpecified, UnitNotUnderstood
 from service.units import Unit, UnitTable
@@ -88,11 +88,11 @@ def with_columns(case: Case, columns: Mapping[str, tuple[str, Column]], reported
     extra: dict[str, dict[str, Quantity]] = {}
     for address, (kind, column) in columns.items():
         finite = column[np.isfinite(column)]
-        item, _, name = address.rpartition(".")
+        item, _, name = address.partition(".")
         value = float(finite[0]) if len(finite) else 1.0
         extra.setdefault(item, {})[name] = Quantity(address, kind, value)
     for address, kind in reported:
-        item, _, name = address.rpartition(".")
+        item, _, name = address.partition(".")
         extra.setdefault(item, {}).setdefault(name, Quantity(address, kind))
 
     def added(item: Any) -> Any:
@@ -105,7 +105,8 @@ def with_columns(case: Case, columns: Mapping[str, tuple[str, Column]], reported
     streams: tuple[Stream, ...] = tuple(added(s) for s in case.streams)
     transfers: tuple[Transfer, ...] = tuple(added(t) for t in case.transfers)
     relations: tuple[Relation, ...] = tuple(added(r) for r in case.relations)
-    return dataclasses.replace(case, streams=streams, transfers=transfers, relations=relations)
+    contents: tuple[Content, ...] = tuple(added(c) for c in case.contents)
+    return dataclasses.replace(case, streams=streams, transfers=transfers, relations=relations, contents=contents)
 
 
 def reported_addresses(
