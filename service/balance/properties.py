@@ -78,11 +78,11 @@ PROCESS: Mapping[str, Trait] = {
 }
 
 WALL: Mapping[str, Trait] = {
-    "mass": Trait("mass", 100.0),
-    "cp": Trait("specific_entropy", 500.0),
-    "area": Trait("area", 1.0),
-    "h_inside": Trait("heat_transfer_coefficient", 100.0),
-    "h_outside": Trait("heat_transfer_coefficient", 10.0),
+    "mass": Trait("mass", 100.0, 1e-6),
+    "cp": Trait("specific_entropy", 500.0, 1.0),
+    "area": Trait("area", 1.0, 1e-9),
+    "h_inside": Trait("heat_transfer_coefficient", 100.0, 0.0),
+    "h_outside": Trait("heat_transfer_coefficient", 10.0, 0.0),
     "ambient_temperature": Trait("temperature", 300.0, 0.0, 1e4),
     "temperature": Trait("temperature", 300.0, 0.0, 1e4),
     "minimum_temperature": Trait("temperature", 250.0, 0.0, 1e4),

@@ -13,6 +13,10 @@ from service.wire.vocabulary import CONTENT, ENDS, PROCESS, SATURATED, SIZE, STA
 
 Body = Mapping[str, Any]
 
+ABOVE_ZERO = frozenset({"volume", "cp", "area"})
+NOT_BELOW_ZERO = frozenset({"mass", "h_inside", "h_outside"})
+"""Quantities of a content or its wall that have no sign."""
+
 
 def build_contents(document: object, reader: QuantityReader) -> Iterator[Content]:
     """The contents of a request (to be used only where nothing was found wrong)."""
@@ -46,6 +50,18 @@ def _content(name: str, fluid: str, boundary: str, body: Body, base: str, reader
     return Content(name, boundary, fluid, quantities, tuple(found), base)
 
 
+def _can_be(name: str, quantity: Quantity, reader: QuantityReader) -> bool:
+    """Whether a size is one; a mass may be zero (an evacuated vessel), a volume or the cp of a wall may not."""
+    value = quantity.value
+    may_be_zero = name in NOT_BELOW_ZERO and not quantity.address.endswith(".wall.mass")
+    if value is None or value > 0.0 or (value == 0.0 and may_be_zero) or name not in ABOVE_ZERO | NOT_BELOW_ZERO:
+        return True
+    text = f"{quantity.address} " + ("cannot be below zero." if may_be_zero else "has to be above zero.")
+    hint = "Leave it out where nothing is known of it."
+    reader.findings.add(SchemaViolation, text, pointer=quantity.pointer, address=quantity.address, hint=hint)
+    return False
+
+
 def _read(
     body: Body, table: Mapping[str, str], item: str, prefix: str, base: str, reader: QuantityReader
 ) -> dict[str, Quantity]:
@@ -54,7 +70,7 @@ def _read(
     for name, raw in body.items():
         if name in table:
             quantity = reader.quantity(raw, table[name], f"{item}.{prefix}{name}", f"{base}/{name}")
-            if quantity is not None:
+            if quantity is not None and _can_be(name, quantity, reader):
                 found[f"{prefix}{name}"] = quantity
     word = body.get("saturated")
     if isinstance(word, str) and word in SATURATED and "T" in table:

@@ -46,6 +46,8 @@ BLOWDOWN: dict[str, Any] = {
     "history": {"columns": ["gas.p", "gas.wall.T", "vent.mass_flow"], "points": 61},
 }  # fmt: skip
 
+GAS = "/boundaries/0/contents/0"
+
 
 def blowdown() -> dict[str, Any]:
     return copy.deepcopy(BLOWDOWN)
@@ -86,6 +88,11 @@ def test_the_rate_form_is_what_a_transient_has_when_nothing_is_said() -> None:
     assert parse({**blowdown(), "form": "rate"}) == parse(blowdown())
 
 
+def test_an_evacuated_vessel_begins_with_no_mass() -> None:
+    document = changed(blowdown(), f"{GAS}/mass", "0 kg")
+    assert parse(document).contents[0].quantities["mass"].value == 0.0
+
+
 def test_the_end_can_be_asked_for_where_a_condition_ends_it() -> None:
     time = parse(changed(blowdown(), "/until/time", "? min")).until.time
     assert time is not None
@@ -97,9 +104,6 @@ def test_the_end_can_be_asked_for_where_a_condition_ends_it() -> None:
 def without(document: dict[str, Any], member: str) -> dict[str, Any]:
     del document[member]
     return document
-
-
-GAS = "/boundaries/0/contents/0"
 
 
 @pytest.mark.parametrize(
@@ -117,6 +121,10 @@ GAS = "/boundaries/0/contents/0"
         (f"{GAS}/process", {"kind": "isothermal"}, f"#{GAS}/process", "integrated form"),
         (f"{GAS}/final/T", "3 degC", f"#{GAS}/final/T", "follows from the integration"),
         (f"{GAS}/wall/thickness", "3 mm", f"#{GAS}/wall/thickness", "Allowed here"),
+        (f"{GAS}/volume", "0 m3", f"#{GAS}/volume", "above zero"),
+        (f"{GAS}/wall/cp", "0 J/kg/K", f"#{GAS}/wall/cp", "above zero"),
+        (f"{GAS}/wall/mass", "0 kg", f"#{GAS}/wall/mass", "above zero"),
+        (f"{GAS}/mass", "-1 kg", f"#{GAS}/mass", "below zero"),
         ("/streams/0/mass", "3 kg", "#/streams/0/mass", "Give `mass_flow`"),
         ("/streams/1/draws", "liquid", "#/streams/1/draws", "leaves a vessel"),
         ("/transfers/0/energy", "3 kJ", "#/transfers/0/energy", "Give `rate`"),

@@ -14,7 +14,7 @@ from itertools import pairwise
 from scipy.optimize import brentq
 
 from service.balance.case import Case, Ending, Quantity, Target
-from service.balance.properties import CONTENT, RELATION, STATE, STREAM, TRANSFER
+from service.balance.properties import CONTENT, RELATION, STATE, STREAM, TRANSFER, WALL
 from service.errors import CaseError, Issue, NoSolution, OverSpecified, TimeBudgetExceeded, UnderSpecified
 from service.fluids.protocol import Fluid
 from service.solvers.rate_form.assembly import assemble
@@ -203,7 +203,8 @@ def _candidates(x: float, signed: bool) -> list[float]:
 
 def _traits(unknown: Quantity) -> tuple[float, float, float]:
     name = unknown.address.rpartition(".")[2]
-    for table in (RELATION, TRANSFER, STATE, STREAM, CONTENT):
+    of_wall = ".wall." in unknown.address
+    for table in (WALL,) if of_wall else (RELATION, TRANSFER, STATE, STREAM, CONTENT):
         if name in table and table[name].kind == unknown.kind:
             trait = table[name]
             return trait.scale, trait.lower, trait.upper
