@@ -1,4 +1,4 @@
-"""Speed, as ratios against a named baseline in the same run: `python -m tests.benchmarks [engine|chain|series|http]`.
+"""Speed, as ratios against a named baseline in the same run: `python -m tests.benchmarks [engine|chain|series ...]`.
 
 Every figure is the median of several alternating rounds; absolute times belong to this machine, ratios travel better.
 """
@@ -17,7 +17,7 @@ import numpy as np
 from service import solvers
 from service.wire.operations import Operations
 from service.wire.parsing import parse_case
-from tests.benchmarks import cases
+from tests.benchmarks import cases, transients
 from tests.benchmarks.http_rates import compare_http
 
 
@@ -84,6 +84,15 @@ def series(operations: Operations) -> None:
     )  # fmt: skip
 
 
+def over_time(operations: Operations) -> None:
+    print("\nTransients in rate form: whole answer, against a script by hand with solve_ivp at the same tolerance (ms)")
+    print(f"{'case':28}{'ours':>9}{'script':>9}{'ratio':>8}")
+    for name in transients.INTEGRATED:
+        document = operations.example(name)
+        a, b = alternate(lambda d=document: operations.solve(d), transients.BY_HAND[name], 1, rounds=5)  # type: ignore[misc]
+        print(f"{name:28}{a * 1e3:9.1f}{b * 1e3:9.1f}{a / b:8.2f}")
+
+
 def _series_line(label: str, rows: int, ours: Callable[[], Any], bare: Callable[[], Any]) -> None:
     a, b = alternate(ours, bare, 1, rounds=5)
     print(f"{label:34}{rows:8}{a / rows * 1e6:9.2f}{b / rows * 1e6:9.2f}{a / b:8.2f}")
@@ -114,9 +123,9 @@ def _bare_turbine_column(state: Any, T: np.ndarray) -> np.ndarray:
 
 
 def main() -> None:
-    wanted = sys.argv[1:] or ["engine", "chain", "series", "http"]
+    wanted = sys.argv[1:] or ["engine", "chain", "series", "transients", "http"]
     operations = Operations.build()
-    for name, run in (("engine", engine), ("chain", chain), ("series", series)):
+    for name, run in (("engine", engine), ("chain", chain), ("series", series), ("transients", over_time)):
         if name in wanted:
             run(operations)
     if "http" in wanted:

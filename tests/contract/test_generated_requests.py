@@ -27,7 +27,7 @@ contract = schemathesis.openapi.from_dict(bundled())
 
 @contract.parametrize()
 @settings(
-    max_examples=10,
+    max_examples=4,
     derandomize=True,
     database=None,
     deadline=None,
