@@ -87,9 +87,9 @@ def series(operations: Operations) -> None:
 def over_time(operations: Operations) -> None:
     print("\nTransients in rate form: whole answer, against a script by hand with solve_ivp at the same tolerance (ms)")
     print(f"{'case':28}{'ours':>9}{'script':>9}{'ratio':>8}")
-    for name in transients.INTEGRATED:
+    for name in sorted(transients.SCRIPTS):
         document = operations.example(name)
-        a, b = alternate(lambda d=document: operations.solve(d), transients.BY_HAND[name], 1, rounds=5)  # type: ignore[misc]
+        a, b = alternate(lambda d=document: operations.solve(d), transients.SCRIPTS[name], 1, rounds=5)  # type: ignore[misc]
         print(f"{name:28}{a * 1e3:9.1f}{b * 1e3:9.1f}{a / b:8.2f}")
 
 

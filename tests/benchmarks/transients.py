@@ -13,7 +13,7 @@ from typing import Any
 import CoolProp
 from CoolProp.CoolProp import PropsSI
 from scipy.integrate import solve_ivp
-from scipy.optimize import minimize_scalar
+from scipy.optimize import brentq, minimize_scalar
 
 C = 273.15
 ATM = 1.002e5  # [Pa] of the works
@@ -223,8 +223,40 @@ BY_HAND: dict[str, Callable[[], Answers]] = {
         two_bottles,
     )
 }  # fmt: skip
-INTEGRATED = (
-    "tank-with-make-up", "steam-accumulator", "receiver-by-compressor", "receiver-through-orifice", "nitrogen-blowdown",
-    "propane-blowdown", "two-bottles",
-)  # fmt: skip
-"""Those that are integrated; the others have closed forms."""
+"""What the ready cases come to; closed forms where there are any."""
+
+
+def _stirred(UA: float, source: float, work: float, capacity: float, first: float, end: float, stop: float) -> float:
+    """Time at which a stirred tank reaches `stop`, or its temperature at `end` where that is never."""
+    t, (T,) = integrate(
+        lambda _, y: [(UA * (source - y[0]) + work) / capacity], [first], [10.0], end, lambda y: y[0] - stop
+    )
+    return t if t < end else T
+
+
+def _jacket() -> float:
+    def off(source: float) -> float:
+        return _stirred(900.0, source, 0.0, 2400 * 3100.0, 18.0, 7200.0, 1e9) - 80.0
+
+    return float(brentq(off, 81.0, 250.0, xtol=1e-9))
+
+
+def _boiler() -> float:
+    water = at(fluid("Water"), CoolProp.PQ_INPUTS, 14e5, 0.008)
+    rho, u, mass = water.rhomass(), water.umass(), 6 * water.rhomass()
+
+    def pressure(y: Any) -> float:
+        return float(at(water, CoolProp.DmassUmass_INPUTS, rho, y[0] / mass).p())
+
+    return integrate(lambda _, y: [180e3], [mass * u], [mass * 1e6], 1e4, lambda y: pressure(y) - 18e5)[0]
+
+
+SCRIPTS: dict[str, Callable[[], object]] = {
+    **BY_HAND,
+    "batch-jacket-time": lambda: _stirred(2100.0, 120.0, 0.0, 2400 * 3100.0, 18.0, 2e4, 80.0),
+    "batch-jacket-temperature": _jacket,
+    "stirred-tank-coil": lambda: _stirred(1700.0, 8.0, 1200.0, 1500 * 2600.0, 75.0, 1800.0, -1e9),
+    "isolated-boiler": _boiler,
+}
+"""Each ready case as an integration, for its time; the carbon dioxide vessel has none, since a bare solve_ivp runs into
+the solid and breaks off there."""
