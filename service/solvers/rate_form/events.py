@@ -28,13 +28,13 @@ MARGIN, CLOSE = 1e-5, 1e-2
 class Watch:
     """gap changes its sign where it happens; text tells it. ending: how the integration ends there, "" if it goes on.
 
-    stepwise: the gap only jumps (a phase), so that it is bisected.
+    bends: the rates of change have a bend there, over which no step may go.
     """
 
     gap: Callable[[Moment, Vector], float]
     text: Callable[[Moment, Vector], str]
     ending: Literal["", "condition", "stop"] = "stop"
-    stepwise: bool = False
+    bends: bool = False
 
 
 def watches(case: Case, plant: Plant) -> list[Watch]:
@@ -159,7 +159,7 @@ def _solid(plant: Plant, i: int) -> Watch:
         f"the throat of {flow.id} passes the triple point of {flow.fluid.name}: solid may form and block it; "
         "its flow is taken as that at the triple pressure"
     )
-    return Watch(lambda m, y: 0.5 - m.carried[i].solid, lambda m, y: text, "")
+    return Watch(lambda m, y: 0.5 - m.carried[i].solid, lambda m, y: text, "", bends=True)
 
 
 def _choked(plant: Plant, i: int) -> Watch:
@@ -169,7 +169,7 @@ def _choked(plant: Plant, i: int) -> Watch:
     def text(moment: Moment, y: Vector) -> str:
         return f"the flow of {name} changes between choked and not choked"
 
-    return Watch(lambda m, y: 0.5 - m.carried[i].choked, text, "")
+    return Watch(lambda m, y: 0.5 - m.carried[i].choked, text, "", bends=True)
 
 
 def lacking(plant: Plant, moment: Moment) -> str:

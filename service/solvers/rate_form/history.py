@@ -68,14 +68,15 @@ class History:
 
 def history(case: Case, plant: Plant, course: Course, columns: Sequence[str]) -> History:
     """Reads the path at equally spaced times, and looks for extremes over all its steps."""
+    # extremes first: what is found next is told from where the last throat was, to a part in 1e10
+    extremes = _extremes(plant, course, list(dict.fromkeys((*columns, *_always(plant)))))
     times = np.linspace(0.0, course.t, max(case.history.points, 2))
     moments = [_moment(plant, course, float(t)) for t in times]
     found = {address: np.array([plant.value(address, moment, y) for moment, y in moments]) for address in columns}
-    watched = list(dict.fromkeys((*columns, *_always(case, plant))))
-    return History(times, found, _extremes(plant, course, watched))
+    return History(times, found, extremes)
 
 
-def _always(case: Case, plant: Plant) -> list[str]:
+def _always(plant: Plant) -> list[str]:
     """What is watched for extremes even where it is no column."""
     out = [f"{v.id}.{name}" for v in plant.vessels for name in ("p", "T", "mass")]
     return out + [f"{v.id}.wall.T" for v in plant.vessels if v.wall is not None]

@@ -4,7 +4,8 @@ The integrator is scipy's DOP853: explicit, of order 8 with a polynomial of orde
 are needed at tight tolerances. Where its own stages tell that stability and not accuracy limits the step (Hairer's
 test: h|λ| > 6.1 over fifteen steps), scipy's BDF takes over. The pair does what LSODA does, but keeps no state outside
 of itself, so that threads may integrate at once, and every step passes through our hands: time budget, events, and
-states that do not exist. The integration begins anew at each point of a table, where the rates may jump or bend.
+states that do not exist. The integration begins anew at each point of a table, where a phase appears or disappears, and
+where a flow chokes: the rates jump or bend there, and no step goes over it.
 """
 
 from __future__ import annotations
@@ -31,7 +32,7 @@ STIFF_AT, STIFF_STEPS, CALM_STEPS = 6.1, 15, 6
 MOST_STEPS = 200_000
 MOST_FAILURES = 80
 SMALLEST = 1e-9  # of the time reached: a step so small leads no further
-MOST_NOTES = 40
+MOST_NOTES, MOST_BENDS = 40, 300
 
 
 @dataclass(slots=True)
@@ -50,6 +51,16 @@ class Course:
     evaluations: int = 0
 
 
+@dataclass(frozen=True, slots=True)
+class Happening:
+    """Something that happens at a time [s] within a step; see `Watch`."""
+
+    t: float
+    ending: Literal["", "condition", "stop"]
+    what: Watch | str
+    bends: bool
+
+
 class Integration:
     """One integration of a plant from 0 to `end` [s], or to the first watch that ends it."""
 
@@ -62,6 +73,8 @@ class Integration:
         self.stiff = False
         self.signs = [0, 0]
         self.step_size: float | None = None
+        self.bound: float | None = None
+        self.bends = 0
 
     def run(self) -> Course:
         """Raises TimeBudgetExceeded, NotConverged; a state that does not exist ends it with a stop."""
@@ -104,6 +117,8 @@ class Integration:
                     before, label = self._gaps(moment, course.y), self._labels(moment)
                     if course.t == 0.0 and self._already(moment, before):
                         return True
+                if solver is not None and solver.status == "finished":  # up to a bend: begin anew after it
+                    solver = None
                 if solver is None:
                     solver = self._solver(stop)
                 message = solver.step()
@@ -117,9 +132,13 @@ class Integration:
                     return True
                 solver = None
                 continue
-            course.steps += 1
             piece = Piece(course.t, float(solver.t), polynomial, plant.within)
-            if self._something_ends(piece, before, after, label, now):
+            happenings = self._happenings(piece, before, after, label, now)
+            if (bend := self._bend(piece, happenings)) is not None:
+                self.bound, self.step_size, solver = bend, bend - course.t, None
+                continue
+            course.steps += 1
+            if self._something_ends(piece, happenings):
                 return True
             course.path.add(piece)
             course.t, course.y = piece.t1, np.array(solver.y)
@@ -132,6 +151,8 @@ class Integration:
 
     def _solver(self, stop: float) -> Any:
         course = self.course
+        if self.bound is not None and course.t < self.bound < stop:
+            stop = self.bound
         first = None if self.step_size is None else min(self.step_size, stop - course.t)
         kind = BDF if self.stiff else DOP853
         atol = np.full(self.plant.size, ATOL * self.rtol / RTOL)
@@ -184,24 +205,39 @@ class Integration:
                 return True
         return False
 
-    def _something_ends(
+    def _happenings(
         self, piece: Piece, before: Sequence[float], after: Sequence[float], label: list[str], now: list[str]
-    ) -> bool:
-        """Finds what happens within a step, notes it, and ends the integration at the first thing that ends it."""
-        found: list[tuple[float, Watch]] = []
+    ) -> list[Happening]:
+        """What happens within a step, in order of time."""
+        found = []
         for i, watch in enumerate(self.watched):
             t = self._crossing(piece, i, before[i], after[i])
             if t is not None:
-                found.append((t, watch))
-        changes = self._phase_changes(piece, label, now) if label != now else []
-        happenings = [(t, w.ending, w) for t, w in found] + [(t, e, text) for t, e, text in changes]
-        for t, ending, what in sorted(happenings, key=lambda h: h[0]):
-            y = piece.y(t)
-            moment = self.plant.moment(t, y)
-            text = what if isinstance(what, str) else what.text(moment, y)
-            if ending:
+                found.append(Happening(t, watch.ending, watch, watch.bends))
+        if label != now:
+            found += self._phase_changes(piece, label, now)
+        return sorted(found, key=lambda happening: happening.t)
+
+    def _bend(self, piece: Piece, happenings: Sequence[Happening]) -> float | None:
+        """Where a step goes over a bend of the rates, so that it has to end there; None where it may stand."""
+        margin = 1e-4 * (piece.t1 - piece.t0)
+        if self.bends >= MOST_BENDS or margin < SMALLEST * piece.t1:
+            return None
+        for happening in happenings:
+            if happening.bends and piece.t0 + margin < happening.t < piece.t1 - margin:
+                self.bends += 1
+                return happening.t
+        return None
+
+    def _something_ends(self, piece: Piece, happenings: Sequence[Happening]) -> bool:
+        """Notes what happens within a step, and ends the integration at the first thing that ends it."""
+        for happening in happenings:
+            t, y = happening.t, piece.y(happening.t)
+            what = happening.what
+            text = what if isinstance(what, str) else what.text(self.plant.moment(t, y), y)
+            if happening.ending:
                 self.course.path.add(Piece(piece.t0, t, piece.y, piece.within))
-                self._end("condition" if ending == "condition" else "stop", t, y, text)
+                self._end(happening.ending, t, y, text)
                 return True
             self._note(t, text)
         return False
@@ -243,24 +279,23 @@ class Integration:
         except (CaseError, ValueError):
             return t1
 
-    def _phase_changes(
-        self, piece: Piece, label: list[str], now: list[str]
-    ) -> list[tuple[float, Literal["", "stop"], str]]:
+    def _phase_changes(self, piece: Piece, label: list[str], now: list[str]) -> list[Happening]:
         """When and into what a vessel's phase changes within a step."""
-        found: list[tuple[float, Literal["", "stop"], str]] = []
+        found = []
         for n, (old, new) in enumerate(zip(label, now, strict=True)):
             if old == new:
                 continue
             low, high = piece.t0, piece.t1
-            while high - low > 1e-10 * max(high, 1e-3):
+            while high - low > 1e-12 * max(high, 1e-3):
                 middle = 0.5 * (low + high)
+                if not low < middle < high:
+                    break
                 y = piece.y(middle)
                 if self.plant.moment(middle, y).held[n].state.phase == old:
                     low = middle
                 else:
                     high = middle
-            y = piece.y(high)
-            missing = lacking(self.plant, self.plant.moment(high, y))
+            missing = lacking(self.plant, self.plant.moment(high, piece.y(high)))
             words = f"{self.plant.vessels[n].id}: {old.replace('_', ' ')} → {new.replace('_', ' ')}"
-            found.append((high, "stop" if missing else "", missing or words))
+            found.append(Happening(high, "stop" if missing else "", missing or words, True))
         return found

@@ -13,7 +13,7 @@ from __future__ import annotations
 import math
 from collections.abc import Mapping
 
-from scipy.optimize import brentq
+from scipy.optimize import brentq, minimize_scalar
 
 from service.balance.restriction import mass_flux
 from service.errors import CaseError, StateOutOfRange
@@ -22,8 +22,11 @@ from service.fluids.protocol import Fluid
 NEAR, NEARER = 1e-2, 3e-3
 """(p1 − p)/p1 between which the enthalpy drop passes over to its integral ∫ v dp: below, it is lost in the digits."""
 
-SPACING = 0.01
-"""Distance in ln p of the points of a parabola."""
+SPACING, WIDE = 0.004, 0.03
+"""Distances in ln p: of the points of a parabola, and of the search on one side of a kink."""
+
+STEP = 2e-5
+"""Distance in ln p at which the sides of a kink are told from it."""
 
 MOST = 20
 SETTLED = 1e-12
@@ -81,11 +84,8 @@ class IsentropicThroat:
         """The largest flux, and the pressure [Pa] where it occurs."""
         self.below_triple = False
         try:
-            if self.ratio is None:
-                lowest = max(p2, 0.2 * up["p"])
-                rough = mass_flux(self.fluid, up["p"], up["T"], up["h"], up["s"], up["rho"], lowest)
-                self.ratio = rough.throat_pressure / up["p"]
-            flux, x = self._followed(up, math.log(self.ratio))
+            found = self._followed(up, math.log(self.ratio)) if self.ratio is not None else None
+            flux, x = found or self._searched(up, p2)
         except CaseError:
             if not 0.0 < self._floor < up["p"] or self.ratio is None or self.ratio * up["p"] > 2.0 * self._floor:
                 raise
@@ -100,13 +100,20 @@ class IsentropicThroat:
         self.ratio = p / up["p"]
         return flux, p
 
+    def _searched(self, up: Mapping[str, float], p2: float) -> tuple[float, float]:
+        """(G*, ln of the ratio) by a search over all pressures, and from there."""
+        lowest = max(p2, 0.2 * up["p"])
+        rough = mass_flux(self.fluid, up["p"], up["T"], up["h"], up["s"], up["rho"], lowest)
+        self._kink = None
+        x = math.log(rough.throat_pressure / up["p"])
+        return self._followed(up, x) or (rough.value, x)
+
     def _wet_at_floor(self, up: Mapping[str, float]) -> bool:
         x = self.at(up, self._floor)[1]
         return x == x
 
-    def _followed(self, up: Mapping[str, float], x: float) -> tuple[float, float]:
-        """(G*, ln of the throat's pressure ratio), from a start x close by."""
-        best = (0.0, x)
+    def _followed(self, up: Mapping[str, float], x: float) -> tuple[float, float] | None:
+        """(G*, ln of the throat's pressure ratio), from a start x close by; None where it is not close."""
         if self._kink is not None:
             xk = self._edge_near(up, self._kink)
             found, after = self._around_kink(up, xk) if xk is not None else (None, x)
@@ -116,7 +123,6 @@ class IsentropicThroat:
         for _ in range(MOST):
             x = min(x, -2.0 * SPACING)
             points = [self.at(up, up["p"] * math.exp(x + d)) for d in (-SPACING, 0.0, SPACING)]
-            best = max(best, (points[1][0], x))
             wet = [quality == quality for _, quality in points]
             if wet[0] != wet[2]:
                 xk = self._edge_between(up, x - SPACING, x + SPACING)
@@ -128,11 +134,11 @@ class IsentropicThroat:
             shift = _vertex(low, mid, high)
             if shift is None:
                 x += math.copysign(5.0 * SPACING, high - low)
-            elif abs(shift) <= SPACING:
+            elif abs(shift) <= 1.5 * SPACING:
                 return self.at(up, up["p"] * math.exp(x + shift))[0], x + shift
             else:
                 x += min(max(shift, -20.0 * SPACING), 20.0 * SPACING)
-        return best
+        return None
 
     def _around_kink(self, up: Mapping[str, float], xk: float) -> tuple[float | None, float]:
         """(G*, x) where the top is at the kink or next to it; (None, where to look on) where it is farther away."""
@@ -141,17 +147,20 @@ class IsentropicThroat:
             return None, xk - 3.0 * SPACING
         at_kink = self.at(up, up["p"] * math.exp(xk))[0]
         for side in (1.0, -1.0):
-            step = min(SPACING, -0.4 * xk) if side > 0.0 else SPACING
-            one, two = (self.at(up, up["p"] * math.exp(xk + side * k * step))[0] for k in (1.0, 2.0))
-            if -3.0 * at_kink + 4.0 * one - two <= 0.0:
+            if self.at(up, up["p"] * math.exp(xk + side * STEP))[0] <= at_kink:
                 continue  # falls away from the kink on this side
-            shift = _vertex(at_kink, one, two)
-            offset = None if shift is None else step + shift * step / SPACING
-            if offset is None or offset > 3.0 * step:
-                return None, xk + side * 3.0 * SPACING
-            x = xk + side * offset
+            low, high = sorted((xk, xk + side * WIDE if side < 0.0 else min(xk + WIDE, -1e-3)))
+            best = minimize_scalar(
+                lambda x: -self.at(up, up["p"] * math.exp(x))[0],
+                bounds=(low, high),
+                method="bounded",
+                options={"xatol": 1e-7},
+            )
+            x, flux = float(best.x), -float(best.fun)
+            if abs(x - xk) > WIDE - 2.0 * SPACING:
+                return None, x
             self._kink = kink
-            return self.at(up, up["p"] * math.exp(x))[0], x
+            return flux, x
         self._kink = kink
         return at_kink, xk
 
