@@ -15,6 +15,7 @@ from typing import Any
 
 from marshmallow import Schema, fields
 
+from service.advisories import DEFERENCE
 from service.balance.solution import EntropyCheck, LedgerAccount, LedgerLine, Solution, StepRecord, StreamState
 from service.wire.presenting import NO_MEANING, SINGLE_PHASE, Presenter, Shown, rounded
 from service.wire.provenance import provenance
@@ -22,11 +23,6 @@ from service.wire.transient_part import TransientPart, asked_units
 from service.wire.vocabulary import DERIVED_STATE, SIZE, STATE, STREAM
 
 _DOUBLED = re.compile(r"\(\(([^()]*)\)\)")
-
-DEFERENCE = (
-    "This is a screening calculation on the numbers given. It does not replace local codes, the maker's instructions "
-    "or the judgement of a licensed professional."
-)
 
 OUT_OF_SYSTEM_NOTE = (
     "Work is listed positive out of the system; the sum counts it into the system, that is with the opposite sign."

@@ -9,6 +9,7 @@ from typing import Any, TypeVar
 import numpy as np
 
 from service import solvers
+from service.advisories import DEFERENCE
 from service.balance.case import Case
 from service.balance.solution import SeriesResult, Solution
 from service.errors import CaseError, Issue, NotFound, SchemaViolation
@@ -16,7 +17,7 @@ from service.fluids.catalogue import FluidCatalogue
 from service.units import UnitTable
 from service.wire import series as columns
 from service.wire.addresses import AddressBook, in_rate_form
-from service.wire.answering import DEFERENCE, Answer
+from service.wire.answering import Answer
 from service.wire.catalogue_pages import describe_fluids, describe_one_fluid, describe_units
 from service.wire.findings import Findings
 from service.wire.library import read_examples, read_schemas, schema_directory
