@@ -9,16 +9,30 @@ of the contents.
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from service.balance.balances import add_transfer, stream_energy, transfers_of
 from service.balance.builder import Builder, EnergyBalance
-from service.balance.case import STANDARD_GRAVITY, Content
+from service.balance.case import STANDARD_GRAVITY, Case, Content
 from service.balance.network import Circuit
 from service.balance.processes import add_process, work_terms
 from service.balance.properties import TRANSFER
 from service.engine.model import Polynomial, Term
 from service.errors import Issue, SchemaViolation
+from service.fluids.protocol import Fluid
 
 INCOMPRESSIBLE = ("solid", "constant_liquid", "brine")
+
+
+def refuse_humid_air(case: Case, fluids: Mapping[str, Fluid | None]) -> None:
+    """Humid air counts by its dry air, which a content does not: SchemaViolation where it is held or flows in."""
+    places = [(c.id, c.pointer) for c in case.contents] + [(s.id, s.pointer) for s in case.streams]
+    for name, pointer in places:
+        fluid = fluids[name]
+        if fluid is not None and fluid.kind == "humid_air":
+            text = f"{name}: humid air is balanced in steady flow only."
+            hint = "Here declare a gas_mixture with the mole fractions of dry air and water, where none condenses."
+            raise SchemaViolation(text, [Issue(text, name, hint, pointer)])
 
 
 def add_contents(builder: Builder) -> None:

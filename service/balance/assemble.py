@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 
-from service.balance.accumulation import add_accumulating_balances, add_contents
+from service.balance.accumulation import add_accumulating_balances, add_contents, refuse_humid_air
 from service.balance.balances import (
     add_energy_balance,
     add_mass_balances,
@@ -25,6 +25,7 @@ def build_accumulating(case: Case, fluids: Mapping[str, Fluid | None], also: Seq
 
     fluids: property models by stream id and by content id.
     """
+    refuse_humid_air(case, fluids)
     builder = Builder(case, fluids, also)
     for stream in case.streams:
         for name in stream.quantities:

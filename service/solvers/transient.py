@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from service.advisories import advise
+from service.balance.accumulation import refuse_humid_air
 from service.balance.builder import BuiltCase
 from service.balance.case import Case
 from service.balance.solution import Solution
@@ -20,6 +21,7 @@ def solve(case: Case, catalogue: FluidCatalogue, deadline: float | None = None) 
     when and why. Raises CaseError: TimeBudgetExceeded says how far the integration had come.
     """
     fluids = resolve_fluids(case, catalogue)
+    refuse_humid_air(case, fluids)
     done = shooting.solve(case, fluids, deadline)
     solution = tell(case, fluids, done)
     # the rules look at the case, its states and its course over time; there is no model of equations behind these

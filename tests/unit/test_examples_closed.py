@@ -10,6 +10,7 @@ from typing import Any
 import pytest
 
 from service.balance.processes import PROCESS_KINDS
+from service.errors import SchemaViolation
 from service.units import UnitTable
 from service.wire.operations import Operations
 
@@ -61,6 +62,19 @@ def test_every_process_but_the_spring_and_the_atmosphere_occurs():
                 process = content.get("process", [])
                 shown |= {stage["kind"] for stage in (process if isinstance(process, list) else [process])}
     assert shown >= set(PROCESS_KINDS) - {"linear", "constant_external_pressure"}
+
+
+@pytest.mark.parametrize("system", ["closed", "transient"])
+def test_humid_air_as_a_content_is_refused_with_what_to_do_instead(system):
+    content = {"id": "air", "fluid": "humid_air", "volume": "50 m3",
+               "initial": {"p": "1 bar", "T": "30 degC", "relative_humidity": 0.5}}  # fmt: skip
+    document: dict[str, Any] = {"system": system, "boundaries": [{"id": "room", "contents": [content]}]}
+    if system == "transient":
+        document["until"] = {"time": "1 h"}
+    with pytest.raises(SchemaViolation, match="steady flow only") as error:
+        operations().solve(document)
+    assert error.value.issues[0].pointer == "#/boundaries/0/contents/0"
+    assert "gas_mixture" in error.value.issues[0].hint
 
 
 @every_case
