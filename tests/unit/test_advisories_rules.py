@@ -215,7 +215,7 @@ def test_an_advisory_is_not_repeated() -> None:
         ({"nitrogen": 0.6, "oxygen": 0.4}, {"oxidising"}),
         ({"nitrogen": 0.75, "carbon dioxide": 0.1, "water": 0.149, "carbon monoxide": 0.001}, {"toxic"}),
     ],
-    ids=str,
+    ids=lambda value: str(value) if isinstance(value, dict) else "",  # a set has no stable text for the workers
 )
 def test_a_gas_is_known_by_what_it_is_made_of(composition: dict[str, float], expected: set[str]) -> None:
     assert hazards(composition) == expected
